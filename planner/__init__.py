@@ -1,0 +1,1 @@
+"""The questions: tables in, answers out; and the command line."""

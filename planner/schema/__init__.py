@@ -1,0 +1,1 @@
+"""The tables: every column, its unit and its meaning, declared once."""

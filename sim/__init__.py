@@ -1,0 +1,1 @@
+"""The fleet in time: values, arithmetic and one event engine."""
