@@ -137,7 +137,12 @@ def choice(name: str, label: str, meaning: str, choices: tuple[str, ...], **more
 def flag(name: str, label: str, meaning: str, **more: object) -> Column:
     more.setdefault("default", "no")
     return Column(
-        name=name, kind="flag", label=label, meaning=meaning, choices=("yes", "no"), **more  # type: ignore[arg-type]
+        name=name,
+        kind="flag",
+        label=label,
+        meaning=meaning,
+        choices=("yes", "no"),
+        **more,  # type: ignore[arg-type]
     )
 
 

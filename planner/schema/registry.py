@@ -1,0 +1,23 @@
+"""All tables that the program reads and writes, in the order in which documents list them."""
+
+from __future__ import annotations
+
+from planner.schema import (
+    engine_tables,
+    fleet_tables,
+    output_tables,
+    plan_tables,
+    setting_tables,
+    work_tables,
+)
+from planner.schema.column import Table
+
+TABLES: dict[str, Table] = {
+    **setting_tables.TABLES,
+    **engine_tables.TABLES,
+    **work_tables.TABLES,
+    **fleet_tables.TABLES,
+    **plan_tables.TABLES,
+}
+OUTPUTS: dict[str, Table] = output_tables.TABLES
+NEEDED: tuple[str, ...] = tuple(name for name, table in TABLES.items() if table.needed)
