@@ -1,0 +1,70 @@
+"""Jobs on this machine's cores: a pool of processes that stays warm between studies.
+
+loky's pool starts its processes without running the main program again, so that it works under the screen's server
+too, and is made anew after a process in it was killed.
+"""
+
+from __future__ import annotations
+
+import os
+import signal
+from collections.abc import Callable
+from concurrent.futures import Future
+
+import loky
+
+from planner.chunk import Done, Missing, Refused, work
+from planner.identity import Identity
+from sim.errors import RequestError
+
+IDLE_SECONDS = 300
+"""How long an idle process waits for the next what-if before it ends."""
+
+# One thread a process: the pool has a process for each core already.
+_ENVIRONMENT = {"OMP_NUM_THREADS": "1", "OPENBLAS_NUM_THREADS": "1", "MKL_NUM_THREADS": "1"}
+
+
+def _begin() -> None:
+    """Leave Ctrl-C to the parent: it keeps what is finished and ends the work in order."""
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
+
+
+class Pool:
+    """A window onto the one pool of this process."""
+
+    def __init__(self, workers: int | None, notice: Callable[[str], None]) -> None:
+        self.workers = workers or cores()
+        self._notice = notice
+        self._executor = self._open()
+
+    def _open(self) -> loky.ProcessPoolExecutor:
+        return loky.get_reusable_executor(
+            max_workers=self.workers, timeout=IDLE_SECONDS, initializer=_begin, env=_ENVIRONMENT
+        )
+
+    def submit(self, expected: Identity, packed_chunk: bytes) -> Future[Done | Missing | Refused]:
+        future: Future[Done | Missing | Refused] = self._executor.submit(work, expected, packed_chunk)
+        return future
+
+    def tick(self) -> bool:
+        return False
+
+    def mend(self) -> None:
+        self._executor = self._open()
+
+    def refuse(self, refused: Refused) -> None:
+        """A process of this very machine differs: the sources were changed while the program ran."""
+        raise RequestError(
+            f"worker {refused.who.process} on this machine",
+            refused.why,
+            "the program that the study was started with",
+            "start the command again",
+        )
+
+    def close(self) -> None:
+        """Leave the pool warm for the next study; chunks that nobody waits for end by themselves."""
+
+
+def cores() -> int:
+    """Return how many cores this process may use."""
+    return len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1
