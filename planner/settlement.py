@@ -10,8 +10,8 @@ half life                 ``(left fraction - 1/2) · cost of the event``
 reserves                  the balance, up to the cost of a qualifying visit, is drawn
 ========================  =====================================================================
 
-Source: common practice of engine leases, as TRADE.md states it with its worked cases. "Left" is counted in the rule's own
-unit, cycles or hours, and a fraction left lies between 0 and 1: what is flown beyond the expected interval is not paid twice.
+Source: common practice of engine leases, as TRADE.md states it with its worked cases. "Left" is counted in the rule's
+own unit, cycles or hours, and a fraction left lies between 0 and 1: flying beyond the interval is not paid twice.
 """
 
 from __future__ import annotations
