@@ -20,10 +20,11 @@ from planner.execute_pool import cores
 from planner.identity import Identity, identity
 from sim.errors import RequestError
 
-CONNECT_SECONDS = 10
+CONNECT_SECONDS = 5
 LOOK_SECONDS = 2.0
 PATIENCE_SECONDS = 60.0
-"""How long a study waits while the cluster has no worker that may compute."""
+REFUSED_PATIENCE_SECONDS = 3.0
+"""How long a study waits while the cluster has no worker, or only ones that must not compute."""
 
 
 class Cluster:
@@ -57,14 +58,6 @@ class Cluster:
         self._looked = 0.0
         self._idle_since: float | None = None
         self._look()
-        if not self._accepted and self._refused:
-            self.close()
-            raise RequestError(
-                "--cluster",
-                "; ".join(f"worker {name}: {why}" for name, why in self._refused.items()),
-                "workers that run this very version of Spoolwright",
-                "install the same version, from the same sources, on every machine of the cluster",
-            )
 
     @property
     def workers(self) -> int:
@@ -142,7 +135,14 @@ class Cluster:
         now = time.monotonic()
         if self._idle_since is None:
             self._idle_since = now
-            self._notice(f"the cluster at {self._address} has no worker now: waiting for one")
+            self._notice(f"the cluster at {self._address} has no worker for this study now: waiting for one")
+        if self._refused and now - self._idle_since > REFUSED_PATIENCE_SECONDS:
+            raise RequestError(
+                "--cluster",
+                "; ".join(f"worker {name}: {why}" for name, why in self._refused.items()),
+                "workers that run this very version of Spoolwright",
+                "install the same version, from the same sources, on every machine of the cluster",
+            )
         if now - self._idle_since > self._patience:
             raise LostWorkersError(
                 f"the cluster at {self._address} has had no worker for {self._patience:.0f} seconds",

@@ -30,7 +30,8 @@ def pack(row: Row) -> bytes:
     """Return the row as bytes, the same on every machine of the same byte values; TypeError for other field types."""
     fields: list[list[Any]] = []
     parts: list[bytes] = []
-    for name, value in zip(row._fields, row, strict=True):
+    for name, found in zip(row._fields, row, strict=True):
+        value = found.item() if isinstance(found, np.generic) else found
         if isinstance(value, (bool, int, str)):
             fields.append([name, "json", value])
             continue
