@@ -8,6 +8,8 @@ from __future__ import annotations
 
 import os
 import signal
+import threading
+import time
 from collections.abc import Callable
 from concurrent.futures import Future
 
@@ -20,13 +22,23 @@ from sim.errors import RequestError
 IDLE_SECONDS = 300
 """How long an idle process waits for the next what-if before it ends."""
 
+LOOK_SECONDS = 1.0
+
 # One thread a process: the pool has a process for each core already.
 _ENVIRONMENT = {"OMP_NUM_THREADS": "1", "OPENBLAS_NUM_THREADS": "1", "MKL_NUM_THREADS": "1"}
 
 
-def _begin() -> None:
-    """Leave Ctrl-C to the parent: it keeps what is finished and ends the work in order."""
+def _begin(parent: int) -> None:
+    """Leave Ctrl-C to the parent, which keeps what is finished and ends the work in order; and end when it is gone."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)
+    threading.Thread(target=_end_with, args=(parent,), daemon=True).start()
+
+
+def _end_with(parent: int) -> None:
+    """End this process once its parent is gone: a killed parent tells nobody, and its pool would wait for ever."""
+    while os.getppid() == parent:
+        time.sleep(LOOK_SECONDS)
+    os._exit(1)
 
 
 class Pool:
@@ -39,7 +51,11 @@ class Pool:
 
     def _open(self) -> loky.ProcessPoolExecutor:
         return loky.get_reusable_executor(
-            max_workers=self.workers, timeout=IDLE_SECONDS, initializer=_begin, env=_ENVIRONMENT
+            max_workers=self.workers,
+            timeout=IDLE_SECONDS,
+            initializer=_begin,
+            initargs=(os.getpid(),),
+            env=_ENVIRONMENT,
         )
 
     def submit(self, expected: Identity, packed_chunk: bytes) -> Future[Done | Missing | Refused]:
