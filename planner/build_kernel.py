@@ -19,57 +19,14 @@ no weaker than that of the published form; see planner/replacement.py for its so
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
 from planner.minimise import Minimum, Rows, minimise
+from planner.openings import Floats, Install, Openings
 from sim.errors import NoSolutionError, RequestError
-
-Floats = NDArray[np.float64]
-
-
-class Install(NamedTuple):
-    """One way to install a part: at which point, until which point it may stay, its price less what is left at the end.
-
-    ``stock`` numbers a used part that exists once, -1 is a new part.
-    """
-
-    part: int
-    at: int
-    until: int
-    usd: float
-    stock: int = -1
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Openings:
-    """The problem on ``points`` points (0 … points - 1, the last is the end); all money is present value.
-
-    Shapes: ``visit_usd`` (steps,) with steps = points - 1; ``open_usd`` (modules, steps); ``run_usd`` and
-    ``run_loss_degC`` (modules, steps, points) by point of restoration and point of the run's end or of the reading;
-    ``first_run_usd`` and ``first_loss_degC`` (modules, points) for the run that is under way; ``budget_degC``
-    (points,); ``in_front`` (modules, modules) true where the second comes off before the first; ``keep_until`` and
-    ``keep_usd`` (parts,) for the parts that are in. The three ``must`` fields hold for point 0.
-    """
-
-    visit_usd: Floats
-    open_usd: Floats
-    run_usd: Floats
-    first_run_usd: Floats
-    run_loss_degC: Floats
-    first_loss_degC: Floats
-    budget_degC: Floats
-    in_front: NDArray[np.bool_]
-    part_module: NDArray[np.int64]
-    keep_until: NDArray[np.int64]
-    keep_usd: Floats
-    installs: tuple[Install, ...]
-    must_visit: bool = False
-    must_open: tuple[int, ...] = ()
-    must_restore: tuple[int, ...] = ()
 
 
 class Opened(NamedTuple):
@@ -152,7 +109,7 @@ def _cost(problem: Openings, at: _Columns) -> Floats:
             problem.open_usd.ravel(),
             np.zeros(problem.open_usd.size),
             [install.usd for install in problem.installs],
-            problem.keep_usd,
+            np.where(problem.keep_until >= problem.visit_usd.size, problem.keep_usd, 0.0),
             runs,
         ]
     )
@@ -233,7 +190,18 @@ def _read(problem: Openings, at: _Columns, found: Minimum) -> Opened:
     opened: NDArray[np.bool_] = found.x[at.open : at.restore].reshape(modules, steps) > 0.5
     restored: NDArray[np.bool_] = found.x[at.restore : at.install].reshape(modules, steps) > 0.5
     chosen = tuple(one for one, x in zip(problem.installs, found.x[at.install : at.keep], strict=True) if x > 0.5)
-    return Opened(opened, restored, chosen, found.cost, found.bound)
+    return Opened(opened, restored, _needed(problem, chosen), found.cost, found.bound)
+
+
+def _needed(problem: Openings, chosen: tuple[Install, ...]) -> tuple[Install, ...]:
+    """Return the installations without those that cost nothing and cover nothing that is not covered anyway."""
+    steps, needed = problem.visit_usd.size, list(chosen)
+    for one in chosen:
+        spans = [(other.at, other.until) for other in needed if other.part == one.part and other is not one]
+        spans.append((0, int(problem.keep_until[one.part])))
+        if one.usd == 0 and all(any(a <= step < b for a, b in spans) for step in range(steps)):
+            needed.remove(one)
+    return tuple(needed)
 
 
 def _why_nothing_fits(problem: Openings) -> str:

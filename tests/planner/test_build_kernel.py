@@ -8,7 +8,8 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from planner.build_kernel import Install, Openings, open_at_best
+from planner.build_kernel import open_at_best
+from planner.openings import Install, Openings, plan_usd
 from sim.errors import NoSolutionError, RequestError
 
 
@@ -65,7 +66,7 @@ def parts_and_openings(problem, chosen, kept, restored) -> float:
         sum(problem.visit_usd[t] for t in visits)
         + sum(problem.open_usd[m, t] for m, t in wanted)
         + sum(one.usd for one in chosen)
-        + sum(usd for usd, k in zip(problem.keep_usd, kept, strict=True) if k)
+        + sum(problem.keep_usd[p] for p, k in enumerate(kept) if k and problem.keep_until[p] >= steps)
     )
 
 
@@ -117,6 +118,7 @@ def test_the_cheapest_plan_equals_brute_force(problem: Openings) -> None:
     answer = open_at_best(problem)
     assert answer.cost_usd == pytest.approx(wanted, abs=1e-6)
     assert answer.bound_usd == pytest.approx(wanted, abs=1e-3)
+    assert plan_usd(problem, restored=answer.restored, installs=answer.installs) <= answer.cost_usd + 1e-6
 
 
 def one_module(**change: object) -> Openings:
