@@ -6,6 +6,7 @@ from planner.schema import (
     engine_tables,
     fleet_tables,
     output_tables,
+    plan_outputs,
     plan_tables,
     setting_tables,
     work_tables,
@@ -19,5 +20,5 @@ TABLES: dict[str, Table] = {
     **fleet_tables.TABLES,
     **plan_tables.TABLES,
 }
-OUTPUTS: dict[str, Table] = output_tables.TABLES
+OUTPUTS: dict[str, Table] = {**output_tables.TABLES, **plan_outputs.TABLES}
 NEEDED: tuple[str, ...] = tuple(name for name, table in TABLES.items() if table.needed)

@@ -1,0 +1,173 @@
+"""The tables of the plans: swaps, what to do while an engine is open, lease returns."""
+
+from __future__ import annotations
+
+from planner.schema.column import Table, choice, date, flag, integer, listing, number, serial, text
+
+_USD = {"low": None}
+
+_TABLES: tuple[Table, ...] = (
+    Table(
+        name="actions",
+        row="one thing to do",
+        columns=(
+            date("date", "Date", "when"),
+            text("what", "What", "removal, exchange, visit, install, move, replace, restore, slot"),
+            listing("serials", "Serials", "engine first, then module, part or tail, parted by spaces"),
+            text("from", "From", "where it comes from"),
+            text("to", "To", "where it goes"),
+            text("before", "Before", "next limit and margin before"),
+            text("after", "After", "next limit and margin after"),
+            number("cost_usd", "Cost", "present value of this action", **_USD),
+            text("reason", "Reason", "why"),
+            number("cash_usd", "Cash", "at the prices of its day, not discounted", **_USD),
+            number("days_without", "Days without", "days without the engine"),
+            integer("limit_before_cycles", "Next limit before", "cycles to it"),
+            integer("limit_after_cycles", "Next limit after", "cycles to it"),
+            number("margin_before_degC", "Margin before", "hot-day margin", low=None),
+            number("margin_after_degC", "Margin after", "hot-day margin", low=None),
+            text("papers", "Papers", "what must be on file before"),
+            text("owed", "Goes back", "which serial must return to whom, and by when"),
+            flag("locked", "Locked", "yes: agreed, the plan was made around it"),
+        ),
+    ),
+    Table(
+        name="ways",
+        row="one way out for one engine, with or without a spare at hand",
+        columns=(
+            serial("engine_serial", "Engine serial", "the engine that comes off"),
+            choice("way", "Way", "A1 whole engine, A2 core visit brought forward, B exchange", ("A1", "A2", "B")),
+            choice("shelf", "Shelf", "full: what is wanted is at hand; empty: nothing is", ("full", "empty")),
+            text("line", "Line", "line of cost"),
+            number("cost_usd", "Cost", "present value on the consumption basis", **_USD),
+            number("cash_usd", "Cash", "not discounted", **_USD),
+            number("days_without", "Days without", "days without the engine"),
+        ),
+    ),
+    Table(
+        name="refusals",
+        row="one reason why a module may not go on an engine",
+        columns=(
+            serial("module_serial", "Module serial", "the module"),
+            serial("engine_serial", "Engine serial", "the engine"),
+            serial("tail", "Tail", "the aircraft"),
+            text("test", "Test", "which of the six tests"),
+            text("reason", "Reason", "why it fails"),
+        ),
+    ),
+    Table(
+        name="pairs",
+        row="one aircraft that would fly two weak or two fresh engines",
+        columns=(
+            serial("tail", "Tail", "the aircraft"),
+            listing("serials", "Serials", "its engines"),
+            choice("kind", "Kind", "weak or fresh", ("weak", "fresh")),
+            integer("etops_minutes", "ETOPS", "approved diversion time"),
+            date("date", "Date", "from when"),
+            number("cost_usd", "Cost", "that the plan counts for it"),
+        ),
+    ),
+    Table(
+        name="build_parts",
+        row="one part and what to do with it at an opening",
+        columns=(
+            date("date", "Date", "of the opening"),
+            serial("part_serial", "Part serial", "the part that is in"),
+            text("part_number", "Part number", "its number"),
+            serial("module_serial", "Module serial", "module it is in"),
+            choice("decision", "Decision", "leave, new or used", ("leave", "new", "used")),
+            serial("used_serial", "Used part", "the used part that goes in"),
+            integer("left_before_cycles", "Left before", "cycles left when the engine is open"),
+            integer("left_after_cycles", "Left after", "cycles left when it is closed"),
+            integer("stub_cycles", "Stub", "cycles thrown away"),
+            number("cost_usd", "Cost", "present value", **_USD),
+            text("reason", "Reason", "why"),
+        ),
+    ),
+    Table(
+        name="build_rules",
+        row="one simple rule against the best plan",
+        columns=(
+            text("rule", "Rule", "best, hard goal, exposed only, run out"),
+            integer("goal_cycles", "Build goal", "with which the rule costs least"),
+            number("cost_usd", "Cost", "present value to the end of the plan", **_USD),
+            number("usd_per_cycle", "Cost a cycle", "over all cycles of the plan", **_USD),
+            number("loses_usd", "Loses", "against the best plan"),
+            integer("openings", "Openings", "shop visits to the end"),
+        ),
+    ),
+    Table(
+        name="build_spans",
+        row="one stretch of a part's or a module's life between openings",
+        columns=(
+            text("lane", "Lane", "module and part number"),
+            text("module", "Module", "module"),
+            serial("serial", "Serial", "serial, or new"),
+            choice("kind", "Kind", "what is in", ("in now", "new", "used", "restored")),
+            integer("from_cycles", "From cycles", "from now"),
+            integer("to_cycles", "To cycles", "from now"),
+            date("from_date", "From", "first day"),
+            date("to_date", "To", "last day"),
+        ),
+    ),
+    Table(
+        name="conditions",
+        row="one condition of a lease at its return",
+        columns=(
+            text("lease", "Lease", "name of the lease"),
+            text("condition", "Condition", "what is measured"),
+            text("wanted", "Wanted", "what the lease asks for"),
+            number("at_return_p10", "At return P10", "of the serial that comes out worst", low=None),
+            number("at_return_p50", "At return P50", "the same", low=None),
+            number("at_return_p90", "At return P90", "the same", low=None),
+            number("pass_chance", "Chance of passing", "of all serials together", high=1),
+            serial("serial", "Fails on", "part, module or engine that comes out worst"),
+            text("unit", "Unit", "of the figures"),
+            text("remedy", "Remedy", "what a failure asks for"),
+            number("settlement_usd", "Settlement", "expected money to the operator, present value", **_USD),
+        ),
+    ),
+    Table(
+        name="settlements",
+        row="one rule of money at a return",
+        columns=(
+            text("lease", "Lease", "name of the lease"),
+            text("event", "Event", "what it counts"),
+            text("basis", "Basis", "rule"),
+            serial("serial", "Serial", "part, module or engine"),
+            number("at_return", "At return", "in the unit of the rule", low=None),
+            text("unit", "Unit", "of the figure"),
+            number("usd", "Money", "to the operator (negative: to pay), at the return", **_USD),
+        ),
+    ),
+    Table(
+        name="cures",
+        row="one way through a lease return",
+        columns=(
+            text("lease", "Lease", "name of the lease"),
+            text("cure", "Cure", "fly out and pay, swap, visit before, replace parts, extend"),
+            listing("serials", "Serials", "what is swapped in, replaced or visited"),
+            number("cost_usd", "Cost", "present value, settlement included", **_USD),
+            date("last_day_to_decide", "Last day to decide", "after it the cure is not in time"),
+            number("pass_chance", "Chance of passing", "with the cure", high=1),
+            integer("lead_days", "Lead time", "days that it takes"),
+            text("risk", "Risk", "what can go wrong"),
+            flag("chosen", "Chosen", "yes: part of the cheapest plan for all returns together"),
+            text("reason", "Reason", "why, or why not"),
+        ),
+    ),
+    Table(
+        name="owners",
+        row="one serial that flies on what another owns",
+        columns=(
+            serial("serial", "Serial", "engine, module or part"),
+            text("owner", "Owner", "whose it is"),
+            serial("flies_on", "Flies on", "engine and tail that it flies on now"),
+            date("due_back", "Due back", "before which return it must come home"),
+            text("lease", "Lease", "the lease that ends then"),
+            text("belongs_to", "Belongs to", "tail or engine that it must go back to"),
+            text("reason", "Reason", "why it must move"),
+        ),
+    ),
+)
+TABLES: dict[str, Table] = {table.name: table for table in _TABLES}
