@@ -41,9 +41,13 @@ class Saved(NamedTuple):
 
     def rows(self, row_type: type[R]) -> dict[Task, R]:
         """Return every row by its task, in the order in which they were saved."""
+        return {task: unpack(blob, row_type) for task, blob in self.packed().items()}
+
+    def packed(self) -> dict[Task, bytes]:
+        """Return every row as the bytes that stand for it."""
         table = pq.read_table(self.folder / "rows.parquet", columns=["strategy", "run", "packed"])
-        packed = zip(*(table[name].to_pylist() for name in table.column_names), strict=True)
-        return {(strategy, run): unpack(blob, row_type) for strategy, run, blob in packed}
+        columns = (table[name].to_pylist() for name in table.column_names)
+        return {(strategy, run): blob for strategy, run, blob in zip(*columns, strict=True)}
 
     def table(self, name: str, *, columns: list[str] | None = None, filters: Any = None) -> pa.Table:
         """Return a table, or those columns and rows of it that are asked for; only these are read."""

@@ -8,6 +8,7 @@ from planner.schema import (
     output_tables,
     plan_outputs,
     plan_tables,
+    saved_outputs,
     setting_tables,
     work_tables,
 )
@@ -20,5 +21,5 @@ TABLES: dict[str, Table] = {
     **fleet_tables.TABLES,
     **plan_tables.TABLES,
 }
-OUTPUTS: dict[str, Table] = {**output_tables.TABLES, **plan_outputs.TABLES}
+OUTPUTS: dict[str, Table] = {**output_tables.TABLES, **plan_outputs.TABLES, **saved_outputs.TABLES}
 NEEDED: tuple[str, ...] = tuple(name for name, table in TABLES.items() if table.needed)
