@@ -73,9 +73,10 @@ def test_a_stopped_study_keeps_what_it_showed_leaves_no_process_and_resumes_to_t
     _, alive = psutil.wait_procs(workers, timeout=5)
     assert alive == []
     found, lines = _resumed(tmp_path)
-    assert found >= len(shown)
+    last = int(shown[-1].split()[1])
+    assert found > last >= 14
     assert lines == _undisturbed()
-    assert shown == lines[: len(shown)]
+    assert set(shown) <= set(lines)
 
 
 def test_ctrl_c_is_answered_within_a_second(tmp_path: Path) -> None:
