@@ -105,7 +105,7 @@ class Window:
         pace = self._tally.seconds_a_task
         if math.isnan(pace):
             return 1
-        share = math.ceil(len(self._tally.todo) / (2 * self._place.workers))
+        share = math.ceil(len(self._tally.todo) / (4 * self._place.workers))
         return max(1, min(int(CHUNK_SECONDS / max(pace, 1e-6)), share))
 
     def _send(self, indexes: list[int], *, bring: bool) -> None:
