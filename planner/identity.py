@@ -17,6 +17,9 @@ from typing import NamedTuple
 import numpy as np
 
 from planner.fingerprint import sources
+from sim.draws import normal, uniforms
+from sim.hazard import age_when
+from sim.wear import gained, wear_law
 
 PROBED_VARIATES = 4096
 
@@ -52,16 +55,21 @@ def program_version() -> str:
 
 @cache
 def probe() -> str:
-    """Return a hash of fixed variates, by the functions through which draws and wear go: exp, log, powers.
-
-    Both the vectorised functions (draws) and the scalar ones (events) are asked, since they come from two libraries.
-    """
-    uniforms = (np.arange(PROBED_VARIATES) + 0.5) / PROBED_VARIATES
-    exponential = -np.log1p(-uniforms)
-    weibull = exponential ** (1.0 / 2.7)
-    wear = 13.0 * (1.0 - np.exp(-weibull)) + 4.3 * weibull
-    scalar = np.array([math.exp(-x) + math.log(x) + x**0.37 + math.expm1(x) for x in uniforms.tolist()])
-    return hashlib.sha256(b"".join(x.tobytes() for x in (exponential, weibull, wear, scalar))).hexdigest()
+    """Return a hash of 4,096 fixed variates and wear values, by the very functions that a run goes through."""
+    names = np.arange(PROBED_VARIATES, dtype=np.uint64)
+    drawn = uniforms(names, seed=1, run=0, purpose="wear")[:, 0].tolist()
+    law = wear_law(
+        early_loss_degC=13.0,
+        early_scale_cycles=700.0,
+        loss_degC_per_1000_cycles=4.3,
+        loss_degC_per_1000_hours=0.25,
+        unrecoverable_degC=15.0,
+        fuel_frac_per_degC=0.0005,
+    )
+    ages = [age_when(-math.log(uniform), 100.0, 2.7, 14_200.0) for uniform in drawn]
+    factors = [math.exp(0.1 * normal(uniform)) for uniform in drawn]
+    wear = [factor * gained(law, 0.0, age, 1.6) for factor, age in zip(factors, ages, strict=True)]
+    return hashlib.sha256(np.array([drawn, ages, wear]).tobytes()).hexdigest()
 
 
 def identity() -> Identity:
