@@ -97,7 +97,7 @@ def _at(path: GasPath[float], flight: Flight, *, thrust_N: float, lost: Mapping[
     state = solve(designed(path), flight=flight, thrust_N=np.array([thrust_N]), lost=arrays)
     if not state.solved[0]:
         raise NoSolutionError(
-            name, f"no acceptable root at {thrust_N / 1000:g} kN; the residual is {state.residual[0]:.1e}"
+            name, f"no acceptable root at {thrust_N / 1000:g} kN (the residual is {state.residual[0]:.1e})"
         )
     return state
 

@@ -35,7 +35,7 @@ def with_best_fan(path: GasPath[Values]) -> GasPath[Values]:
 
     An engine for which none is found keeps a customary one; ``faults`` of its design tells if that cannot be.
     """
-    many, start = repeated(path, 2), customary_fan(path.bypass_ratio)
+    many, start = repeated(path, 2), _start_fan(path)
 
     def misfit(logs: Values) -> Values:
         trial = _with_fan(many, np.exp(logs[0]))
@@ -70,6 +70,17 @@ def customary_fan(bypass_ratio: Number) -> Number:
     return ratio
 
 
+def _start_fan(path: GasPath[Values]) -> Values:
+    """Return the ratio nearest to the best one among a few down from the customary: high ones may not run at all."""
+    tries = 1.0 + (customary_fan(path.bypass_ratio) - 1.0) * np.array([1.4, 1.2, 1.0, 0.8, 0.6, 0.4])[:, None]
+    many = _with_fan(repeated(path, tries.shape[0]), tries.ravel())
+    with np.errstate(invalid="ignore", divide="ignore"):
+        far = np.abs(_fan_misfit(many, walk_for_one_kg(many))).reshape(tries.shape)
+    best = np.argmin(np.where(np.isfinite(far), far, np.inf), axis=0)
+    ratio: Values = tries[best, np.arange(tries.shape[1])]
+    return ratio
+
+
 def _with_fan(path: GasPath[Values], ratio: Values) -> GasPath[Values]:
     """Return the path with another fan pressure ratio and the overall pressure ratio that it had."""
     hpc = path.hpc_pressure_ratio * path.fan_pressure_ratio / ratio
@@ -87,7 +98,7 @@ def _fan_misfit(path: GasPath[Values], done: Walk) -> Values:
 def _fan_and_entry(path: GasPath[float], sfc: float) -> tuple[GasPath[float], bool]:
     """Return the path with best fan and fitting temperature, and true; or with a fan from the range, and false."""
     many = repeated(stacked([path]), 3)
-    start = np.log([customary_fan(path.bypass_ratio), path.turbine_entry_K])[:, None]
+    start = np.log([_start_fan(stacked([path]))[0], path.turbine_entry_K])[:, None]
 
     def tried(logs: Values, stack: GasPath[Values]) -> GasPath[Values]:
         return replace(_with_fan(stack, np.exp(logs[0])), turbine_entry_K=np.exp(logs[1]))

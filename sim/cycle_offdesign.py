@@ -38,6 +38,12 @@ UNKNOWNS = len(Point._fields)
 TOLERANCE = 1e-11
 """Largest relative residual of a solution; rounding in the inversions leaves some 1e-13."""
 
+FLOW_RANGE = (0.5, 1.25)
+"""Volume flow of the fan over its design flow within which its straight characteristic may stand; own judgement."""
+
+HOTTEST_ENTRY_K = 2300.0
+"""Above it the gas would not be frozen, and no turbine would stand it."""
+
 LEAST_BOOSTER = 1.0 + 1e-9
 """A pressure ratio of one means that there is no booster."""
 
@@ -137,7 +143,9 @@ def solve(engine: Engine, *, flight: Flight, thrust_N: Values, lost: Lost) -> Op
         worst = np.max(np.abs(left), axis=0)
         good = (worst < TOLERANCE) & (done.turbines.lpt.pressure_ratio > LEAST_CHOKING_RATIO)
         good &= (point.fan_pressure_ratio > 1.0) & (point.hpc_pressure_ratio > 1.0)
-        good &= done.exhaust.core.pressure > flight.pressure_Pa
+        good &= (done.exhaust.core.pressure > flight.pressure_Pa) & (point.turbine_entry_K < HOTTEST_ENTRY_K)
+        flow = volume(done.compressors.intake) / engine.sizes.fan_volume
+        good &= (flow > FLOW_RANGE[0]) & (flow < FLOW_RANGE[1])
     return Operating(point, done, worst, good)
 
 

@@ -146,8 +146,7 @@ def test_a_design_balances_or_is_refused(known: dict[str, float], overall: float
 def test_nothing_but_an_answer_or_a_users_error_comes_out(known: dict[str, float], overall: float, spools: int) -> None:
     try:
         engine = designed(gas_path(known, overall_pressure_ratio=overall, spools=spools).path)
-    except UserError as error:
-        assert str(error)
+    except UserError:
         return
     for station in stations(engine.path, engine.walk):  # type: ignore[arg-type]
         assert np.isfinite(station.temperature_K)
