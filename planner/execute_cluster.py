@@ -22,6 +22,7 @@ from sim.errors import RequestError
 
 CONNECT_SECONDS = 5
 LOOK_SECONDS = 2.0
+LOOK_SECONDS_IDLE = 0.3
 PATIENCE_SECONDS = 60.0
 REFUSED_PATIENCE_SECONDS = 3.0
 """How long a study waits while the cluster has no worker, or only ones that must not compute."""
@@ -68,7 +69,7 @@ class Cluster:
         return future
 
     def tick(self) -> bool:
-        if time.monotonic() - self._looked < LOOK_SECONDS:
+        if time.monotonic() - self._looked < (LOOK_SECONDS if self._accepted else LOOK_SECONDS_IDLE):
             return False
         before = set(self._accepted)
         self._look()
