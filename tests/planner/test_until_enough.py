@@ -82,7 +82,5 @@ def test_runs_of_zero_and_senseless_precisions_are_refused() -> None:
     with pytest.raises(RequestError, match="--runs: found 0, expected 1 or more"):
         Stop(runs=0)
     for precision in (0.0, -0.1, 1.0, float("nan")):
-        with pytest.raises(
-            RequestError, match=r"--precision: found .*, expected a share of total cost between 0 and 1"
-        ):
+        with pytest.raises(RequestError, match=r"--precision: found .*, expected a share of total cost"):
             Stop(precision_frac=precision)
