@@ -6,6 +6,7 @@ so. Nothing here, nor what a job imports, loads pandas.
 
 from __future__ import annotations
 
+import os
 import pickle
 import time
 import traceback
@@ -25,16 +26,21 @@ _payloads: dict[str, Any] = {}
 
 
 class Chunk(NamedTuple):
-    """A few tasks for one worker; ``payload`` is None when the worker is thought to have it."""
+    """A few tasks for one worker; ``payload`` is None when the worker is thought to have it.
+
+    ``wanted`` is a file that is there as long as somebody waits for the rows (empty: always).
+    """
 
     job: Job
     payload_key: str
     payload: bytes | None
     tasks: tuple[Task, ...]
+    wanted: str
 
 
 class Done(NamedTuple):
-    """Rows in the order of the chunk's tasks; fewer than the tasks when the next one raised ``error``."""
+    """Rows in the order of the chunk's tasks; fewer than the tasks when the next one raised ``error`` or was no longer
+    wanted."""
 
     rows: tuple[Any, ...]
     error: BaseException | None
@@ -79,6 +85,8 @@ def work(expected: Identity, packed_chunk: bytes) -> Done | Missing | Refused:
     start = time.perf_counter()
     rows = []
     for task in chunk.tasks:
+        if chunk.wanted and not os.path.exists(chunk.wanted):
+            break
         try:
             rows.append(chunk.job(payload, *task))
         except Exception as error:

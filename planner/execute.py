@@ -58,6 +58,9 @@ def execute(
     if where.kind == "here":
         yield from _run_here(job, payload, tally, cancelled)
         return
+    if not tally.todo:
+        yield from tally.out()
+        return
     place: Place = _opened(where, notice)
     window = Window(job, payload, tally=tally, place=place)
     try:

@@ -8,10 +8,12 @@ from __future__ import annotations
 
 import os
 import signal
+import tempfile
 import threading
 import time
 from collections.abc import Callable
 from concurrent.futures import Future
+from pathlib import Path
 
 import loky
 
@@ -47,6 +49,7 @@ class Pool:
     def __init__(self, workers: int | None, notice: Callable[[str], None]) -> None:
         self.workers = workers or cores()
         self._notice = notice
+        self._wanted = _sign()
         self._executor = self._open()
 
     def _open(self) -> loky.ProcessPoolExecutor:
@@ -57,6 +60,10 @@ class Pool:
             initargs=(os.getpid(),),
             env=_ENVIRONMENT,
         )
+
+    @property
+    def wanted(self) -> str:
+        return self._wanted
 
     def submit(self, expected: Identity, packed_chunk: bytes) -> Future[Done | Missing | Refused]:
         future: Future[Done | Missing | Refused] = self._executor.submit(work, expected, packed_chunk)
@@ -78,9 +85,25 @@ class Pool:
         )
 
     def close(self) -> None:
-        """Leave the pool warm for the next study; chunks that nobody waits for end by themselves."""
+        """Leave the pool warm for the next study; chunks that nobody waits for end with the run they are at.
+
+        The pool cannot take back what already lies in its queue, and the next what-if would wait for that.
+        """
+        if self._wanted:
+            Path(self._wanted).unlink(missing_ok=True)
+
+
+def _sign() -> str:
+    """Return a new empty file, or nothing where none can be made: then chunks run to their end."""
+    try:
+        handle, name = tempfile.mkstemp(prefix="spoolwright-")
+    except OSError:
+        return ""
+    os.close(handle)
+    return name
 
 
 def cores() -> int:
-    """Return how many cores this process may use."""
-    return len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1
+    """Return how many cores this process may use, as the system and its limits have it."""
+    count: int = loky.cpu_count()
+    return count

@@ -76,13 +76,13 @@ class Tally:
                 self.notice(self.kept.trouble)
 
     def receive_chunk(self, indexes: list[int], done: Done) -> None:
-        """Take a chunk's rows in; what stood behind a task that failed is sent again."""
+        """Take a chunk's rows in; what did not come, such as what stood behind a task that failed, is sent again."""
         for index, row in zip(indexes, done.rows, strict=False):
             self.receive(index, row)
         rest = indexes[len(done.rows) :]
         if done.error is not None and rest:
-            self._errors[rest[0]] = done.error
-            self.lose(rest[1:])
+            self._errors[rest.pop(0)] = done.error
+        self.lose(rest)
         if done.rows:
             pace = done.seconds / len(done.rows)
             # The slower of the two, fading: a chunk that is too short costs less than one that is too long.

@@ -34,6 +34,11 @@ class Place(Protocol):
         """How many chunks it can work on at once; 0 while it waits for workers."""
         ...
 
+    @property
+    def wanted(self) -> str:
+        """A file that tells workers that somebody still waits, as far as they can see it; else empty."""
+        ...
+
     def submit(self, expected: Identity, packed_chunk: bytes) -> Future[Answer]:
         """Have ``chunk.work`` called with these somewhere."""
         ...
@@ -112,8 +117,8 @@ class Window:
         tasks = tuple(self._tally.tasks[index] for index in indexes)
         payload = self._payload if bring else None
         try:
-            chunk = pickle.dumps(Chunk(self._job, self._payload_key, payload, tasks), protocol=5)
-            future = self._place.submit(self._expected, chunk)
+            chunk = Chunk(self._job, self._payload_key, payload, tasks, self._place.wanted)
+            future = self._place.submit(self._expected, pickle.dumps(chunk, protocol=5))
         except (RuntimeError, OSError) as error:  # it broke between two chunks
             self._tally.lose(indexes)
             self._break(error)

@@ -26,6 +26,8 @@ R = TypeVar("R")
 _FRAME = struct.Struct("<4sIII")
 _MAGIC = b"swr1"
 
+FLUSH_SECONDS = 1.0
+
 MOST_BYTES = 2_000_000_000
 """Beyond it the folders that were used longest ago are dropped; a user's saved studies are never touched."""
 
@@ -41,6 +43,7 @@ class Kept(Generic[R]):
         self._row_type = row_type
         self._folders = {strategy: home / "kept" / key for strategy, key in keys.items()}
         self._files: dict[str, int] = {}
+        self._flushed = time.monotonic()
         self._blobs: dict[Task, bytes] = {}
         self.trouble: str | None = None
         for strategy, folder in self._folders.items():
@@ -66,7 +69,7 @@ class Kept(Generic[R]):
         return None if blob is None else unpack(blob, self._row_type)
 
     def put(self, task: Task, row: Any) -> None:
-        """Keep a row; once this returns, the row survives the end of this process."""
+        """Keep a row; once this returns, the row survives the end of this process, and within a second a power cut."""
         blob = pack(row)
         self._blobs[task] = blob
         if self.trouble is not None:
@@ -76,22 +79,29 @@ class Kept(Generic[R]):
         frame = _FRAME.pack(_MAGIC, len(run), len(blob), check) + run + blob
         try:
             _write_all(self._file(task[0]), frame)
+            if time.monotonic() - self._flushed > FLUSH_SECONDS:
+                self._flush()
         except OSError as error:
             self.trouble = f"finished runs can no longer be written ({error.strerror}): they are kept in memory only"
 
     def close(self) -> None:
         """Bring what was written to the disk itself, and make room when the rows of old studies take too much."""
+        try:
+            self._flush()
+        except OSError as error:
+            self.trouble = f"finished runs may not have reached the disk ({error.strerror})"
         for file in self._files.values():
-            try:
-                os.fsync(file)
-            except OSError as error:
-                self.trouble = f"finished runs may not have reached the disk ({error.strerror})"
             os.close(file)
         self._files.clear()
         for folder in self._folders.values():
             if folder.is_dir():
                 os.utime(folder)
                 drop_oldest(folder.parent, most_bytes=MOST_BYTES)
+
+    def _flush(self) -> None:
+        self._flushed = time.monotonic()
+        for file in self._files.values():
+            os.fsync(file)
 
     def _file(self, strategy: str) -> int:
         if strategy not in self._files:

@@ -106,6 +106,31 @@ def judge(
     return Verdict(False, "more", pairs)
 
 
+def expected_runs(
+    totals: Mapping[str, NDArray[np.float64]],
+    *,
+    precision_frac: float,
+    planned: tuple[int, ...],
+) -> int:
+    """Return the planned look at which the rule is likely to stop, as the spread so far has it.
+
+    A half-width falls with the root of the runs; a pair is settled once it is precise enough or excludes zero.
+    """
+    verdict = judge(totals, precision_frac=precision_frac, planned=planned)
+    runs = len(next(iter(totals.values())))
+    if verdict.stop:
+        return runs
+    level = 1.0 - ALLOWED_ERROR / len(planned)
+    known = list(verdict.pairs.values()) or [paired_interval(x, 0.0, level_frac=level) for x in totals.values()]
+    wanted = precision_frac * abs(float(np.mean([np.mean(total) for total in totals.values()])))
+    widths = []
+    for interval in known:
+        target = max(wanted, abs(interval.mean)) if verdict.pairs else wanted
+        widths.append(interval.half_width / target if target else math.inf)
+    needed = runs * max(widths) ** 2
+    return next((look for look in planned if look >= needed), planned[-1])
+
+
 def plain_verdict(totals: Mapping[str, NDArray[np.float64]], *, reason: Literal["fixed", "cancelled"]) -> Verdict:
     """Return the plain 95 % intervals of a study whose number of runs did not depend on its results."""
     return Verdict(True, reason, _pairs(totals, 1.0 - ALLOWED_ERROR))

@@ -19,7 +19,7 @@ from planner.chunk import Job, Task
 from planner.execute import Where, execute
 from planner.execute_tally import Listener
 from planner.kept import Kept
-from planner.sequential import LEAST_RUNS, MOST_RUNS, Verdict, judge, looks, plain_verdict
+from planner.sequential import LEAST_RUNS, MOST_RUNS, Verdict, expected_runs, judge, looks, plain_verdict
 from sim.errors import RequestError
 
 
@@ -69,13 +69,14 @@ def run_until_enough(
     planned = () if stop.runs else looks(least=min(stop.least, most), most=most)
     tasks: list[Task] = [(strategy, run) for run in range(most) for strategy in strategies]
     rows: dict[str, list[Any]] = {strategy: [] for strategy in strategies}
+    horizon = _Horizon(len(strategies) * most, progress)
     results = execute(
         job,
         payload,
         tasks,
         where=where,
         kept=kept,
-        progress=progress,
+        progress=horizon if progress else None,
         cancelled=cancelled,
         notice=notice,
     )
@@ -83,7 +84,11 @@ def run_until_enough(
         for (strategy, run), row in results:
             rows[strategy].append(row)
             if strategy == strategies[-1] and run + 1 in planned:
-                verdict = judge(_totals(rows, total), precision_frac=stop.precision_frac, planned=planned)
+                so_far = _totals(rows, total)
+                verdict = judge(so_far, precision_frac=stop.precision_frac, planned=planned)
+                horizon.rows = len(strategies) * expected_runs(
+                    so_far, precision_frac=stop.precision_frac, planned=planned
+                )
                 look_at(run + 1, verdict)
                 if verdict.stop:
                     return Outcome(rows, verdict, run + 1)
@@ -91,6 +96,20 @@ def run_until_enough(
     rows = {strategy: found[:whole] for strategy, found in rows.items()}
     reason: Literal["fixed", "cancelled"] = "fixed" if whole == stop.runs else "cancelled"
     return Outcome(rows, plain_verdict(_totals(rows, total), reason=reason), whole)
+
+
+class _Horizon:
+    """Progress as a user wants it: towards the run at which the rule is likely to stop, not the most allowed."""
+
+    def __init__(self, rows: int, progress: Listener | None) -> None:
+        self.rows, self._progress = rows, progress
+
+    def __call__(self, done: int, total: int, seconds_left: float) -> None:
+        """Pass on how far it is; the pace is the same, the end is nearer."""
+        if self._progress is not None:
+            end = max(self.rows, done)
+            left = seconds_left * (end - done) / (total - done) if total > done else 0.0
+            self._progress(done, end, left)
 
 
 def _totals(rows: dict[str, list[Any]], total: Callable[[Any], float]) -> dict[str, NDArray[np.float64]]:

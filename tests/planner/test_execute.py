@@ -100,6 +100,29 @@ def test_a_reader_that_stops_early_drops_the_surplus_and_leaves_the_pool_usable(
     assert time.monotonic() - start < 3.0
 
 
+def test_what_a_stopped_study_left_in_the_pool_does_not_hold_up_the_next() -> None:
+    """Chunks of a quarter of a second lie in the queue of the pool, which cannot take them back."""
+    tasks = [("a", run) for run in range(100_000)]
+    waits = []
+    for number in range(3):
+        results = execute(odd_jobs.steady, {"name": f"slider {number}", "seconds": 0.02}, tasks, where=TWO)
+        for _ in range(40):
+            next(results)
+        results.close()
+        start = time.monotonic()
+        next(execute(odd_jobs.steady, {"name": "next"}, TASKS, where=TWO))
+        waits.append(time.monotonic() - start)
+    assert min(waits) < 0.2
+
+
+def test_rows_that_are_all_at_hand_need_no_pool(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    keys = {"whole_engine": "w", "exchange": "x"}
+    with Kept(tmp_path, keys, odd_jobs.OddRow) as kept:
+        list(execute(odd_jobs.steady, {"name": "m"}, TASKS, where=HERE, kept=kept))
+        monkeypatch.setattr("planner.execute._opened", None)
+        assert _bytes(execute(odd_jobs.steady, {"name": "m"}, TASKS, where=TWO, kept=kept)) == _expected({"name": "m"})
+
+
 def test_progress_rises_to_the_total_and_foretells_the_time_left() -> None:
     told: list[tuple[int, int, float]] = []
     payload = {"name": "i", "seconds": 0.01}

@@ -11,6 +11,7 @@ from hypothesis import strategies as st
 
 from planner.sequential import (
     cheaper_chance,
+    expected_runs,
     judge,
     looks,
     luck_saved,
@@ -62,6 +63,16 @@ def test_three_strategies_go_on_until_every_pair_is_settled() -> None:
     assert list(verdict.pairs) == [("a", "b"), ("a", "c"), ("b", "c")]
     assert verdict.pairs["a", "b"].high < 0.0
     assert not verdict.stop
+
+
+def test_the_look_at_which_it_will_stop_is_foretold_from_the_spread() -> None:
+    """A half-width falls with the root of the runs: three times too wide at 16 runs is narrow enough at 144."""
+    luck = np.random.default_rng(5).normal(0.0, 1.0, 16)
+    totals = _totals(list(luck - luck.mean()))
+    half = judge(totals, precision_frac=1e-9, planned=looks()).pairs["a", "b"].half_width
+    for times, look in ((0.9, 16), (1.3, 32), (3.0, 256), (100.0, 1024)):
+        precision = half / times / float(np.mean([totals["a"], totals["b"]]))
+        assert expected_runs(totals, precision_frac=precision, planned=looks()) == look
 
 
 def test_one_strategy_alone_is_judged_by_its_own_total() -> None:

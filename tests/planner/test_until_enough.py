@@ -41,6 +41,14 @@ def test_a_loose_precision_stops_at_a_planned_look_and_drops_the_surplus() -> No
     assert widest <= 0.3 * mean
 
 
+def test_progress_goes_towards_the_run_at_which_it_will_stop() -> None:
+    told: list[tuple[int, int, float]] = []
+    outcome = _study(Stop(precision_frac=0.3), progress=lambda *far: told.append(far))
+    assert told[0][1] == 3 * 1024
+    assert told[-1][1] <= 3 * 2 * outcome.runs
+    assert all(done <= total for done, total, _ in told)
+
+
 def test_the_same_answer_comes_from_two_workers() -> None:
     one, two = _study(Stop(precision_frac=0.3)), _study(Stop(precision_frac=0.3), TWO)
     assert _bytes(one) == _bytes(two)
