@@ -100,6 +100,7 @@ class Cluster:
         known = self._ask_scheduler()
         new = [name for name in known if name not in self._accepted and name not in self._refused]
         gone = [name for name in self._accepted if name not in known]
+        self._refused = {name: why for name, why in self._refused.items() if name in known}
         for name in gone:
             del self._accepted[name]
             self._notice(f"worker {name} is gone: what it had is done again")
