@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import NamedTuple
 
-from sim.cycle_inputs import OVERALL_RANGE, SEPARATE, THREE_SPOOLS, TWO_SPOOLS, GasPath, check_path, stacked
+from sim.cycle_inputs import OVERALL_RANGE, SEPARATE, THREE_SPOOLS, TWO_SPOOLS, GasPath, check_path, middle_of, stacked
 from sim.cycle_match import customary_fan, first, with_best_fan, with_fuel
 from sim.errors import OutOfRangeError
 
@@ -72,7 +72,7 @@ def gas_path(
     if not OVERALL_RANGE[0] <= overall_pressure_ratio <= OVERALL_RANGE[1]:
         raise OutOfRangeError("overall pressure ratio", f"{overall_pressure_ratio:g}", "10 to 60")
     values = {**CUSTOMARY, **known}
-    assumed = [f"{_words(name)} {value:g}" for name, value in CUSTOMARY.items() if _is_assumed(name, known, spools)]
+    assumed = [_words(name, spools) for name in CUSTOMARY if _is_assumed(name, known, spools)]
     best_fan = "fan_pressure_ratio" not in known
     fuel_known = takeoff_fuel_kg_per_s is not None and "turbine_entry_K" not in known
     fan = values.setdefault("fan_pressure_ratio", customary_fan(values["bypass_ratio"]))
@@ -105,5 +105,7 @@ def _is_assumed(name: str, known: Mapping[str, float], spools: int) -> bool:
     return name not in known and (spools == THREE_SPOOLS or not name.startswith("ipt_"))
 
 
-def _words(name: str) -> str:
-    return name.replace("middle", "booster or IP compressor").replace("_", " ")
+def _words(name: str, spools: int) -> str:
+    if name == "fuel_heat_J_per_kg":
+        return f"lower heating value {CUSTOMARY[name] / 1e6:g} MJ/kg"
+    return f"{name.replace('middle', middle_of(spools)).replace('_', ' ')} {CUSTOMARY[name]:g}"

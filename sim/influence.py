@@ -97,12 +97,18 @@ class Matrix:
     path: GasPath[float]
     conditions: Conditions
     station: str
-    egt_K: float
+    lpt_inlet_K: float
+    lpt_exit_K: float
     takeoff_fuel_kg_per_s: float
     cruise_fuel_kg_per_s: float
     egt_per_ambient: Band
     egt_K_per_thrust_point: Band
     coefficients: tuple[Coefficient, ...]
+
+    @property
+    def egt_K(self) -> float:
+        """EGT at the probe's station on the corner-point day."""
+        return self.lpt_inlet_K if self.station == LPT_INLET else self.lpt_exit_K
 
     def of(self, change: Change) -> Coefficient:
         """Return the coefficient of a change; KeyError where the engine has no such component."""
@@ -243,7 +249,8 @@ def _matrix(path: GasPath[float], conditions: Conditions, station: str, *, level
         path=path,
         conditions=conditions,
         station=station,
-        egt_K=float(egt[0]),
+        lpt_inlet_K=float(level[0, 0, 0]),
+        lpt_exit_K=float(level[1, 0, 0]),
         takeoff_fuel_kg_per_s=float(level[fuel, 0, 0]),
         cruise_fuel_kg_per_s=float(level[fuel, 1, 0]),
         egt_per_ambient=_band(slope[probe, -2, 0]),

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from planner.schema import (
+    engine_outputs,
     engine_tables,
     fleet_tables,
     output_tables,
@@ -21,5 +22,10 @@ TABLES: dict[str, Table] = {
     **fleet_tables.TABLES,
     **plan_tables.TABLES,
 }
-OUTPUTS: dict[str, Table] = {**output_tables.TABLES, **plan_outputs.TABLES, **saved_outputs.TABLES}
+OUTPUTS: dict[str, Table] = {
+    **output_tables.TABLES,
+    **engine_outputs.TABLES,
+    **plan_outputs.TABLES,
+    **saved_outputs.TABLES,
+}
 NEEDED: tuple[str, ...] = tuple(name for name, table in TABLES.items() if table.needed)

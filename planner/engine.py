@@ -1,0 +1,191 @@
+"""The question ``engine``: a type's gas path, and what a point lost in each module costs in margin and fuel.
+
+Works on checked rows (mappings by column), so that command, screen, report and assembly share it; ``answer`` computes
+the matrix once for each rating and tabulates it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from typing import Any, NamedTuple
+
+import numpy as np
+
+from planner.gas_paths import (
+    ZERO_DEGC_K,
+    Row,
+    TypeCycle,
+    cell,
+    check_station,
+    components_of,
+    conditions_of,
+    type_cycle,
+)
+from sim.cycle import THRUST_RANGE, cruise, stations, takeoff
+from sim.errors import RequestError
+from sim.influence import Band, Matrix, influences
+from sim.redline import hottest_ambient, takeoff_egt
+
+Rows = Mapping[str, Sequence[Row]]
+
+NEVER_INFERRED = "EGT and fuel cannot tell HPC from HPT wear: a module's condition is an input, never inferred"
+
+
+class EngineAnswer(NamedTuple):
+    """The tables of the answer, rows by column as in the schema's result tables, and what was assumed."""
+
+    stations: list[dict[str, Any]]
+    coefficients: list[dict[str, Any]]
+    ratings: list[dict[str, Any]]
+    ambient: list[dict[str, Any]]
+    warnings: list[str]
+
+
+def chosen_types(rows: Rows, engine_type: str | None) -> list[Row]:
+    """Return the type asked for, or all types. Raises RequestError for a type that the tables do not have."""
+    have = [str(row["engine_type"]) for row in rows["engine_types"]]
+    if engine_type is None:
+        return list(rows["engine_types"])
+    if engine_type not in have:
+        raise RequestError("engine type", engine_type, " or ".join(have) or "a row in engine_types")
+    return [row for row in rows["engine_types"] if row["engine_type"] == engine_type]
+
+
+def answer(rows: Rows, *, engine_type: str | None = None) -> EngineAnswer:
+    """Return the answer for one type or all; ``rows`` holds engine_types, ratings, module_types and perhaps cycles.
+
+    Raises RequestError, OutOfRangeError or NoSolutionError where a type's gas path cannot be computed.
+    """
+    result = EngineAnswer([], [], [], [], [])
+    for kind in chosen_types(rows, engine_type):
+        name = str(kind["engine_type"])
+        cells = next((row for row in rows.get("cycles", ()) if row["engine_type"] == name), None)
+        ratings = sorted(
+            (row for row in rows["ratings"] if row["engine_type"] == name), key=lambda row: -float(row["thrust_kN"])
+        )
+        cycle = type_cycle(kind, cycle=cells, ratings=ratings)
+        usable = [row for row in ratings if _thrust_frac(cycle, row) >= THRUST_RANGE[0]]
+        matrices = rating_matrices(cycle, usable)
+        top = matrices[0]
+        modules = [str(row["module"]) for row in rows["module_types"] if row["engine_type"] == name]
+        measured = float(kind["redline_degC"]) - float(ratings[0]["new_margin_degC"])
+        result.stations.extend(_station_rows(cycle, top))
+        result.coefficients.extend(coefficient_rows(name, top, modules))
+        result.ratings.extend(_rating_rows(kind, usable, matrices))
+        result.ambient.extend(_ambient_rows(name, usable, matrices))
+        result.warnings.extend(cycle.warnings)
+        result.warnings.append(
+            check_station(cycle, inlet_K=top.lpt_inlet_K, exit_K=top.lpt_exit_K, measured_degC=measured)
+        )
+        result.warnings.extend(
+            f"type {name}, rating {row['rating']}: under {THRUST_RANGE[0]:g} of the highest thrust, out of reach"
+            for row in ratings
+            if row not in usable
+        )
+    result.warnings.append(NEVER_INFERRED)
+    return result
+
+
+def rating_matrices(cycle: TypeCycle, ratings: Sequence[Row]) -> list[Matrix]:
+    """Return one matrix for each rating of a type, solved as one stack."""
+    count = len(ratings)
+    return influences(
+        [cycle.path] * count,
+        conditions=[conditions_of(cycle, thrust_kN=float(row["thrust_kN"])) for row in ratings],
+        stations=[cycle.station] * count,
+        given=[cycle.given] * count,
+    )
+
+
+def _thrust_frac(cycle: TypeCycle, rating: Row) -> float:
+    return 1000.0 * float(rating["thrust_kN"]) / cycle.path.thrust_N
+
+
+def _station_rows(cycle: TypeCycle, top: Matrix) -> list[dict[str, Any]]:
+    """Return the stations at the design point, on the corner-point day and in cruise, highest rating."""
+    path, conditions = cycle.path, top.conditions
+    states = {
+        "take-off, standard day": takeoff(path),
+        "take-off, corner point": takeoff(path, ambient_K=conditions.corner_point_K),
+        "cruise": cruise(
+            path,
+            height_m=conditions.cruise_height_m,
+            mach=conditions.cruise_mach,
+            thrust_N=conditions.cruise_thrust_frac * path.thrust_N,
+        ),
+    }
+    return [
+        {"engine_type": cycle.engine_type, "condition": condition, **station._asdict()}
+        for condition, state in states.items()
+        for station in stations(path, state.walk)
+    ]
+
+
+def coefficient_rows(engine_type: str, matrix: Matrix, modules: Sequence[str]) -> list[dict[str, Any]]:
+    """Return a row for each change of each component, under the module that holds it (else under its own name)."""
+    spools = matrix.path.spools
+    holder = {component: module for module in modules for component in components_of(module, spools=spools)}
+    result = []
+    for coefficient in matrix.coefficients:
+        component = coefficient.change.component
+        row: dict[str, Any] = {
+            "engine_type": engine_type,
+            "module": holder.get(component, component),
+            "component": component,
+            "change": coefficient.change.kind,
+        }
+        bands: dict[str, Band] = {
+            "egt_K": coefficient.egt_K,
+            "egt_frac": coefficient.egt_frac,
+            "fuel_takeoff_frac": coefficient.fuel_takeoff_frac,
+            "fuel_cruise_frac": coefficient.fuel_cruise_frac,
+        }
+        for name, band in bands.items():
+            row |= {name: band.value, f"{name}_low": band.low, f"{name}_high": band.high}
+        result.append(row)
+    return result
+
+
+def _rating_rows(kind: Row, ratings: Sequence[Row], matrices: Sequence[Matrix]) -> list[dict[str, Any]]:
+    """Return margin and hottest ambient of a new engine at each rating, by the table's slope and by the cycle's."""
+    given = cell(kind, "egt_per_ambient")
+    corner = matrices[0].conditions.corner_point_K - ZERO_DEGC_K
+    result = []
+    for rating, matrix in zip(ratings, matrices, strict=True):
+        margin, slope = float(rating["new_margin_degC"]), matrix.egt_per_ambient
+        result.append(
+            {
+                "engine_type": kind["engine_type"],
+                "rating": rating["rating"],
+                "thrust_kN": float(rating["thrust_kN"]),
+                "new_margin_degC": margin,
+                "model_margin_degC": float(ratings[0]["new_margin_degC"]) + matrices[0].egt_K - matrix.egt_K,
+                "egt_per_ambient": given if given is not None else slope.value,
+                "model_egt_per_ambient": slope.value,
+                "model_egt_per_ambient_low": slope.low,
+                "model_egt_per_ambient_high": slope.high,
+                "degC_per_thrust_point": matrix.egt_K_per_thrust_point.value,
+                "hottest_ambient_degC": hottest_ambient(
+                    corner_point_degC=corner, margin_degC=margin, egt_per_ambient=given or slope.value
+                ),
+                "model_hottest_ambient_degC": hottest_ambient(
+                    corner_point_degC=corner, margin_degC=margin, egt_per_ambient=slope.value
+                ),
+            }
+        )
+    return result
+
+
+def _ambient_rows(name: str, ratings: Sequence[Row], matrices: Sequence[Matrix]) -> list[dict[str, Any]]:
+    """Return the margin of a new engine against ambient temperature at each rating's full thrust."""
+    ambient = np.arange(-10.0, 50.1, 5.0)
+    result = []
+    for rating, matrix in zip(ratings, matrices, strict=True):
+        share = np.full_like(ambient, matrix.conditions.takeoff_thrust_frac)
+        egt = takeoff_egt(matrix.path, station=matrix.station, ambient_K=ambient + ZERO_DEGC_K, thrust_frac=share)
+        margin = float(rating["new_margin_degC"]) + matrix.egt_K - egt
+        result += [
+            {"engine_type": name, "rating": rating["rating"], "ambient_degC": float(a), "margin_degC": float(m)}
+            for a, m in zip(ambient, margin, strict=True)
+        ]
+    return result
