@@ -38,7 +38,7 @@ COLDEST_K, HOTTEST_K = 150.0, 2600.0
 _H, _CP, _PHI = slice(0, 6), slice(6, 11), slice(11, 17)
 _H_AND_CP, _CP_AND_PHI = slice(0, 11), slice(6, 17)
 
-_SMALL_STEP_K = 5e-3
+_SMALL_STEP_K = 5e-4
 _MOST_STEPS = 12
 
 FUEL_HYDROGEN_PER_CARBON = 23.0 / 12.0
@@ -188,7 +188,7 @@ class Gas:
                 rows = self._pick(temperature, _H_AND_CP)
                 step = (wanted - _h(rows[:6], temperature)) / _cp(rows[6:], temperature)
             temperature = np.minimum(np.maximum(temperature + step, COLDEST_K), HOTTEST_K)
-            # The rule converges quadratically: after a step of some millikelvin a few nanokelvin are left.
+            # The rule converges quadratically: after a step of half a millikelvin some 1e-10 K are left.
             if not np.fmax.reduce(np.abs(step)) > _SMALL_STEP_K:
                 break
         return np.where(np.abs(step) <= _SMALL_STEP_K, temperature, np.nan)

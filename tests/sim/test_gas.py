@@ -60,6 +60,15 @@ def test_inversions_return_the_temperature_from_any_start(kelvin: float, near: f
     assert by_phi == pytest.approx(kelvin, abs=1e-7)
 
 
+def test_inversions_of_a_wide_stack_leave_no_noise_that_a_solver_would_see() -> None:
+    # Newton stops when the largest step is small; what the others then have left must stay under 1e-12 relative.
+    kelvin = np.linspace(200.0, 2000.0, 4001)
+    stream = gas.products(np.full_like(kelvin, 0.02))
+    for spread in (0.05, 0.5, 5.0, 50.0):
+        found = stream.temperature_at_enthalpy(stream.enthalpy(kelvin), near=kelvin + spread)
+        assert np.max(np.abs(found / kelvin - 1.0)) < 2e-12
+
+
 def test_an_energy_that_no_temperature_fits_is_not_a_number_and_leaves_its_neighbour_alone() -> None:
     stream = gas.air(2)
     found = stream.temperature_at_enthalpy(np.array([1e7, 308_889.36]), near=np.array([500.0, 500.0]))
