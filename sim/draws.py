@@ -56,7 +56,9 @@ def uniforms(
     words[2] = np.uint64(run & 0xFFFFFFFF)
     words[3] = (PURPOSES.index(purpose) << 24) + np.arange(block, block + blocks, dtype=np.uint64)[None, :]
     out = philox(words.reshape(4, -1), (seed & 0xFFFFFFFF, (seed >> 32) & 0xFFFFFFFF))
-    pairs = np.stack([(out[0] >> np.uint64(5), out[1] >> np.uint64(6)), (out[2] >> np.uint64(5), out[3] >> np.uint64(6))])
+    pairs = np.stack(
+        [(out[0] >> np.uint64(5), out[1] >> np.uint64(6)), (out[2] >> np.uint64(5), out[3] >> np.uint64(6))]
+    )
     # 53 bits, moved by half a step so that neither 0 nor 1 can come
     values = (pairs[:, 0] * 67108864.0 + pairs[:, 1] + 0.5) / 9007199254740992.0
     return np.asarray(values.T.reshape(count, 2 * blocks), dtype=np.float64)
@@ -89,10 +91,10 @@ class Luck:
     def draw(self, purpose: str, index: int, number: int) -> float:
         """Return draw ``number`` of the entity at ``index``."""
         row: list[float] = self._rows[purpose][index]
-        while number >= len(row):
-            more = uniforms(
-                self._names[index : index + 1], seed=self.seed, run=self.run, purpose=purpose, block=len(row) // 2
-            )
+        while number >= len(row):  # as many again as there are, so that long lives stay cheap
+            here = self._names[index : index + 1]
+            block = len(row) // 2
+            more = uniforms(here, seed=self.seed, run=self.run, purpose=purpose, block=block, blocks=block)
             row.extend(more[0].tolist())
         return row[number]
 

@@ -15,19 +15,19 @@ import math
 def cumulative(age: float, shape: float, scale: float) -> float:
     """Return the cumulative hazard at an age, in the scale's unit."""
     ratio = age / scale
-    return ratio if shape == 1.0 else ratio**shape
+    return ratio if shape == 1.0 else math.pow(ratio, shape)
 
 
 def age_when(budget: float, age: float, shape: float, scale: float) -> float:
     """Return the age at which the hazard gathered since ``age`` reaches ``budget`` (not below ``age``)."""
     if shape == 1.0:
         return age + budget * scale
-    return max(age, scale * ((age / scale) ** shape + budget) ** (1.0 / shape))
+    return max(age, scale * math.pow(math.pow(age / scale, shape) + budget, 1.0 / shape))
 
 
 def scale_in(environment: float, scale: float, exponent: float) -> float:
     """Return the scale in an environment: life is divided by the environment to a power."""
-    return scale if exponent == 0.0 or environment == 1.0 else scale / environment**exponent
+    return scale if exponent == 0.0 or environment == 1.0 else scale / math.pow(environment, exponent)
 
 
 def survival(age: float, ahead: float, shape: float, scale: float) -> float:
