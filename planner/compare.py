@@ -203,13 +203,14 @@ def _sentences(study: Study, pairs: tuple[tuple[str, str], ...]) -> list[str]:
         if interval.low <= 0.0 <= interval.high:
             result.append(
                 f"{a} and {b} cannot be told apart with {study.runs} runs: the difference is "
-                f"{interval.mean / 1e6:+.2f} M USD, {span} (present value, consumption basis); ask for more runs or a finer precision."
+                f"{interval.mean / 1e6:+.2f} M USD, {span} (present value, consumption basis); ask for more runs or a "
+                "finer precision."
             )
         else:
             result.append(
                 f"{better} costs less than {worse}: {abs(interval.mean) / 1e6:.2f} M USD ({share:.1%}) in present "
-                f"value on the consumption basis, 95 % interval {low / 1e6:.2f} to {high / 1e6:.2f} M USD; the {study.runs} "
-                "runs suffice for the sign."
+                f"value on the consumption basis, 95 % interval {low / 1e6:.2f} to {high / 1e6:.2f} M USD; the "
+                f"{study.runs} runs suffice for the sign."
             )
     return result
 

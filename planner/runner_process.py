@@ -31,7 +31,7 @@ from planner.request_files import (
 )
 from sim.errors import UserError
 
-ANSWERS: dict[str, str] = {"compare": "planner.study:answer"}
+ANSWERS: dict[str, str] = {"compare": "planner.answering:answer"}
 """Which function answers which command; a request can name no other."""
 
 AT_ONCE = 4

@@ -130,7 +130,8 @@ def _take_away(fleet: Fleet, kind: str, item: str, count: int) -> Fleet:
 
 def _last_first(rows: list[Spare], count: int) -> list[Spare]:
     """Return the rows to take away: those on the shelf before those in shops, the last serial first."""
-    return sorted(reversed(rows), key=lambda row: row.place == "shop")[:count]
+    last_first = rows[::-1]
+    return sorted(last_first, key=lambda row: row.place == "shop")[:count]
 
 
 def _without_modules(fleet: Fleet, gone: set[str]) -> Fleet:
