@@ -197,7 +197,6 @@ _TABLES: tuple[Table, ...] = (
                 "lease_in_after_days",
                 "Lease in after",
                 "days an aircraft waits before a lease-in is sought (blank: never)",
-                default=3,
                 high=3650,
             ),
         ),

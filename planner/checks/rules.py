@@ -1,0 +1,40 @@
+"""All rules in one tuple, and the records of a folder held to all of them."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from planner import tables
+from planner.checks.cells import CELL_RULES
+from planner.checks.fault import Rule, problems
+from planner.checks.files import FILE_RULES
+from planner.checks.headings import HEADING_RULES
+from planner.records import Records
+from planner.settings import SETTING_RULES
+from planner.tables import TABLE_RULES
+from sim.errors import Problem
+
+RECORD_RULES: tuple[Rule, ...] = ()
+RULES: tuple[Rule, ...] = (*FILE_RULES, *TABLE_RULES, *HEADING_RULES, *CELL_RULES, *SETTING_RULES, *RECORD_RULES)
+
+
+def check(path: Path) -> tuple[Records, tuple[Problem, ...]]:
+    """Return the records of a folder or workbook and every problem in them, in the order of files and rows.
+
+    Raises RequestError where there is no fleet.
+    """
+    records, found = tables.read(path)
+    return records, in_order((*found, *record_problems(records)))
+
+
+def record_problems(records: Records) -> tuple[Problem, ...]:
+    """Return what breaks the rules on whole records."""
+    found: list[Problem] = []
+    for rule in RECORD_RULES:
+        found += [p._replace(file=records[p.table].file or p.file) for p in problems(rule, rule.check(records))]
+    return tuple(found)
+
+
+def in_order(found: tuple[Problem, ...]) -> tuple[Problem, ...]:
+    """Return problems by severity, file and row, so that what stops stands first."""
+    return tuple(sorted(found, key=lambda p: (p.severity != "stops", p.file, p.row or 0, p.column, p.rule)))

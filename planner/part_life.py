@@ -1,0 +1,67 @@
+"""What the records prove of each part's life: cycles by rating flown, and whether they are proven at all.
+
+A blank count, a history that falls short of it, or a status that is not substantiated make the life unknown, and
+unknown life is zero. Where the history is longer than the count the history holds: use is rounded up.
+"""
+
+from __future__ import annotations
+
+from typing import NamedTuple
+
+from planner.records import Records
+
+
+class PartLife(NamedTuple):
+    """``why`` says in words why a life is unknown, and is blank where it is known."""
+
+    flown: tuple[tuple[str, int], ...]
+    known: bool
+    why: str
+
+
+def lowest_ratings(records: Records) -> dict[str, str]:
+    """Return for each part number the rating at which its lowest general limit stands."""
+    lowest: dict[str, tuple[int, str]] = {}
+    limits = records["part_limits"]
+    for _, number, rating, cycles, directive in limits.pick("part_number", "rating", "limit_cycles", "directive"):
+        if directive or number is None or rating is None or cycles is None:
+            continue
+        if number not in lowest or (cycles, rating) < lowest[number]:
+            lowest[number] = (cycles, rating)
+    return {number: rating for number, (_, rating) in lowest.items()}
+
+
+def history_by_part(records: Records) -> dict[str, dict[str, int]]:
+    """Return cycles by rating for each part serial, as its history has them."""
+    totals: dict[str, dict[str, int]] = {}
+    for _, serial, rating, cycles in records["part_history"].pick("part_serial", "rating", "cycles"):
+        if serial is None or rating is None or cycles is None:
+            continue
+        by_rating = totals.setdefault(serial, {})
+        by_rating[rating] = by_rating.get(rating, 0) + cycles
+    return totals
+
+
+def flown_by_part(records: Records) -> list[PartLife]:
+    """Return the life of each row of ``parts``, in their order."""
+    history = history_by_part(records)
+    lowest = lowest_ratings(records)
+    with_history = records.given("part_history")
+    lives = []
+    rows = records["parts"].pick("part_serial", "part_number", "cycles_since_new", "status_substantiated")
+    for _, serial, number, cycles, substantiated in rows:
+        flown = dict(history.get(serial, {}))
+        short = (cycles or 0) - sum(flown.values())
+        if short > 0:
+            # where they were flown is not known: at the rating that leaves least
+            rating = lowest.get(number, "")
+            flown[rating] = flown.get(rating, 0) + short
+        why = ""
+        if cycles is None:
+            why = "cycles since new are blank"
+        elif short > 0 and with_history:
+            why = f"history is {short:,} cycles short"
+        elif not substantiated:
+            why = "status is not substantiated"
+        lives.append(PartLife(tuple(flown.items()), not why, why))
+    return lives
