@@ -40,9 +40,7 @@ class Season:
             year, month = following.year, following.month
         slopes.append(slopes[-1])
         self._days, self._flown, self._slopes = days, flown, slopes
-        self.year_starts = tuple(
-            float((dt.date(as_of.year + k, 1, 1) - as_of).days) for k in range(1, _YEARS)
-        )
+        self.year_starts = tuple(float((dt.date(as_of.year + k, 1, 1) - as_of).days) for k in range(1, _YEARS))
 
     def flown(self, day: float) -> float:
         """Return the flown years from the as-of date to ``day`` (0 before it)."""

@@ -147,4 +147,4 @@ def _first_tooth(slope: Slope, margin_degC: float, now: float, decay: float) -> 
 
 def wash_gain(*, gain_degC: float, half_life: float, every: int, since: int) -> float:
     """Return the gain left, in degC, ``since`` cycles after the last build (a wash comes with each build)."""
-    return gain_degC * 0.5 ** ((since % every) / half_life)
+    return gain_degC * math.exp2(-(since % every) / half_life)
