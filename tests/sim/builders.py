@@ -50,9 +50,7 @@ def tiny_fleet(*, tails: int = 2, spares: int = 1, parts: bool = True, **changes
             )
         )
         for name in ("fan", "core"):
-            modules.append(
-                Module(module_serial=f"{name}-{i + 1}", engine_type="T", module=name, engine_serial=serial)
-            )
+            modules.append(Module(module_serial=f"{name}-{i + 1}", engine_type="T", module=name, engine_serial=serial))
             if parts:
                 part_rows.append(
                     Part(
@@ -113,11 +111,20 @@ def tiny_fleet(*, tails: int = 2, spares: int = 1, parts: bool = True, **changes
                 renews_hardware=frac > 0,
             )
             for module in ("fan", "core")
-            for level, usd, frac in (("check", 5_000.0, 0.0), ("restoration", 50_000.0, 1.0), ("overhaul", 80_000.0, 1.0))
+            for level, usd, frac in (
+                ("check", 5_000.0, 0.0),
+                ("restoration", 50_000.0, 1.0),
+                ("overhaul", 80_000.0, 1.0),
+            )
         ),
         visits=tuple(
             Visit(engine_type="T", visit=visit, engine_level_usd=usd, test_usd=2_000.0)
-            for visit, usd in (("quick", 10_000.0), ("module_exchange", 15_000.0), ("core", 20_000.0), ("overhaul", 30_000.0))
+            for visit, usd in (
+                ("quick", 10_000.0),
+                ("module_exchange", 15_000.0),
+                ("core", 20_000.0),
+                ("overhaul", 30_000.0),
+            )
         ),
         part_types=tuple(
             PartType(part_number=f"{m}-disk", engine_type="T", module=m, price_usd=40_000.0) for m in ("fan", "core")
