@@ -17,6 +17,7 @@ from planner.checks.rules import check
 from planner.part_life import flown_by_part
 from planner.records import Records, Rows
 from planner.settings import as_of
+from planner.wear_in_degrees import in_degrees
 from sim.errors import RecordsError
 from sim.fleet import Base, Fleet, Part, Settings
 
@@ -54,6 +55,7 @@ def load(path: Path) -> Fleet:
 
 def assemble(records: Records) -> Fleet:
     """Return the fleet that records describe; they must be free of problems that stop."""
+    records, converted = in_degrees(records)
     day_zero = as_of(dict(records.settings))
     tables: dict[str, Any] = {
         name: _rows(records[name], kind, day_zero) for name, kind in _row_types().items() if name not in _WORDS
@@ -63,7 +65,7 @@ def assemble(records: Records) -> Fleet:
         season=_season(records),
         bases=_bases(records),
         parts=_parts(records, day_zero),
-        assumptions=tuple(f"{name}: {text}" for name, text in assumed(records).items()),
+        assumptions=(*(f"{name}: {text}" for name, text in assumed(records).items()), *converted),
         **tables,
     )
 

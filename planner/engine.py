@@ -1,12 +1,12 @@
 """The question ``engine``: a type's gas path, and what a point lost in each module costs in margin and fuel.
 
-Works on checked rows (mappings by column), so that command, screen, report and assembly share it; ``answer`` computes
-the matrix once for each rating and tabulates it.
+Works on checked rows (mappings by column), so that command, screen and report share it; the matrix is computed once
+for each rating.
 """
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -22,7 +22,8 @@ from planner.gas_paths import (
     type_cycle,
 )
 from sim.cycle import THRUST_RANGE, cruise, stations, takeoff
-from sim.errors import RequestError
+from sim.effect import degC_per_point
+from sim.errors import RequestError, UserError
 from sim.influence import Band, Matrix, influences
 from sim.redline import hottest_ambient, takeoff_egt
 
@@ -41,6 +42,18 @@ class EngineAnswer(NamedTuple):
     warnings: list[str]
 
 
+class TypeModel(NamedTuple):
+    """One type: its row, its cycle, the ratings that the model reaches (highest first) with a matrix each, the others,
+    and a sentence on the level of its EGT."""
+
+    kind: Row
+    cycle: TypeCycle
+    ratings: list[Row]
+    left_out: list[str]
+    matrices: list[Matrix]
+    level: str
+
+
 def chosen_types(rows: Rows, engine_type: str | None) -> list[Row]:
     """Return the type asked for, or all types. Raises RequestError for a type that the tables do not have."""
     have = [str(row["engine_type"]) for row in rows["engine_types"]]
@@ -51,39 +64,76 @@ def chosen_types(rows: Rows, engine_type: str | None) -> list[Row]:
     return [row for row in rows["engine_types"] if row["engine_type"] == engine_type]
 
 
-def answer(rows: Rows, *, engine_type: str | None = None) -> EngineAnswer:
-    """Return the answer for one type or all; ``rows`` holds engine_types, ratings, module_types and perhaps cycles.
+def models(rows: Rows, *, engine_type: str | None = None) -> tuple[list[TypeModel], list[str]]:
+    """Return cycle and matrices of one type or all, and why any of all could not be computed.
 
-    Raises RequestError, OutOfRangeError or NoSolutionError where a type's gas path cannot be computed.
+    ``rows`` holds engine_types, ratings and perhaps cycles. Raises RequestError, OutOfRangeError or NoSolutionError
+    where the type asked for, or every type, cannot be computed.
     """
-    result = EngineAnswer([], [], [], [], [])
+    done: list[TypeModel] = []
+    refused: list[UserError] = []
     for kind in chosen_types(rows, engine_type):
-        name = str(kind["engine_type"])
-        cells = next((row for row in rows.get("cycles", ()) if row["engine_type"] == name), None)
-        ratings = sorted(
-            (row for row in rows["ratings"] if row["engine_type"] == name), key=lambda row: -float(row["thrust_kN"])
-        )
-        cycle = type_cycle(kind, cycle=cells, ratings=ratings)
-        usable = [row for row in ratings if _thrust_frac(cycle, row) >= THRUST_RANGE[0]]
-        matrices = rating_matrices(cycle, usable)
-        top = matrices[0]
-        modules = [str(row["module"]) for row in rows["module_types"] if row["engine_type"] == name]
-        measured = float(kind["redline_degC"]) - float(ratings[0]["new_margin_degC"])
-        result.stations.extend(_station_rows(cycle, top))
+        try:
+            done.append(_model(kind, rows))
+        except UserError as error:
+            refused.append(error)
+    if refused and not done:
+        raise refused[0]
+    return done, [f"not computed: {error}" for error in refused]
+
+
+def _model(kind: Row, rows: Rows) -> TypeModel:
+    name = str(kind["engine_type"])
+    cells = next((row for row in rows.get("cycles", ()) if row["engine_type"] == name), None)
+    ratings = sorted(
+        (row for row in rows["ratings"] if row["engine_type"] == name), key=lambda row: -float(row["thrust_kN"])
+    )
+    cycle = type_cycle(kind, cycle=cells, ratings=ratings)
+    usable = [row for row in ratings if _thrust_frac(cycle, row) >= THRUST_RANGE[0]]
+    left_out = [str(row["rating"]) for row in ratings if row not in usable]
+    matrices = rating_matrices(cycle, usable)
+    measured = float(kind["redline_degC"]) - float(ratings[0]["new_margin_degC"])
+    top = matrices[0]
+    level = check_station(cycle, inlet_K=top.lpt_inlet_K, exit_K=top.lpt_exit_K, measured_degC=measured)
+    return TypeModel(kind, cycle, usable, left_out, matrices, level)
+
+
+def answer(known: Sequence[TypeModel], *, module_types: Sequence[Row]) -> EngineAnswer:
+    """Return the tables of the answer."""
+    result = EngineAnswer([], [], [], [], [])
+    for one in known:
+        name, top = one.cycle.engine_type, one.matrices[0]
+        modules = [str(row["module"]) for row in module_types if row["engine_type"] == name]
+        result.stations.extend(_station_rows(one.cycle, top))
         result.coefficients.extend(coefficient_rows(name, top, modules))
-        result.ratings.extend(_rating_rows(kind, usable, matrices))
-        result.ambient.extend(_ambient_rows(name, usable, matrices))
-        result.warnings.extend(cycle.warnings)
-        result.warnings.append(
-            check_station(cycle, inlet_K=top.lpt_inlet_K, exit_K=top.lpt_exit_K, measured_degC=measured)
-        )
+        result.ratings.extend(_rating_rows(one.kind, one.ratings, one.matrices))
+        result.ambient.extend(_ambient_rows(name, one.ratings, one.matrices))
+        result.warnings.extend(one.cycle.warnings)
+        result.warnings.append(one.level)
         result.warnings.extend(
-            f"type {name}, rating {row['rating']}: under {THRUST_RANGE[0]:g} of the highest thrust, out of reach"
-            for row in ratings
-            if row not in usable
+            f"type {name}, rating {rating}: under {THRUST_RANGE[0]:g} of the highest thrust, out of reach"
+            for rating in one.left_out
         )
     result.warnings.append(NEVER_INFERRED)
     return result
+
+
+def fuel_share(known: Sequence[TypeModel]) -> Callable[[str, str, str], float]:
+    """Return the matrix's share of cruise fuel a degree lost, by type, rating and module; zero without one."""
+    matrices = {
+        (one.cycle.engine_type, str(row["rating"])): matrix
+        for one in known
+        for row, matrix in zip(one.ratings, one.matrices, strict=True)
+    }
+
+    def share(engine_type: str, rating: str, module: str) -> float:
+        matrix = matrices.get((engine_type, rating))
+        components = components_of(module, spools=matrix.path.spools) if matrix is not None else ()
+        if matrix is None or not components or components == ("combustor",):
+            return 0.0
+        return degC_per_point(matrix, components).fuel_frac_per_degC
+
+    return share
 
 
 def rating_matrices(cycle: TypeCycle, ratings: Sequence[Row]) -> list[Matrix]:

@@ -11,6 +11,7 @@ import re
 from collections.abc import Mapping, Sequence
 from typing import Any, NamedTuple
 
+from planner.records import Records
 from sim.cycle_inputs import MIXED, SEPARATE, THREE_SPOOLS, TWO_SPOOLS, GasPath, middle_of
 from sim.cycle_rules import gas_path
 from sim.errors import OutOfRangeError, RequestError
@@ -61,6 +62,12 @@ class TypeCycle(NamedTuple):
     given: frozenset[str]
     corner_point_K: float
     warnings: tuple[str, ...]
+
+
+def rows_of(records: Records, table: str) -> list[dict[str, Any]]:
+    """Return a table's rows as mappings by column."""
+    columns = records[table].columns
+    return [dict(zip(columns, values, strict=True)) for values in zip(*columns.values(), strict=True)]
 
 
 def cell(row: Row, name: str) -> float | None:

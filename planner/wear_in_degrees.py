@@ -7,9 +7,11 @@ rating: loss in degC = loss in points x degC a point, and fuel a degree from the
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import Any
 
-from planner.gas_paths import Row, cell, components_of, conditions_of, type_cycle
+from planner.gas_paths import Row, cell, components_of, conditions_of, rows_of, type_cycle
+from planner.records import Records
 from sim.effect import degC_per_point
 from sim.errors import RequestError
 from sim.influence import POINT, Matrix, influence
@@ -21,6 +23,22 @@ PAIRS: tuple[tuple[str, str], ...] = (
     ("eff_frac_per_1000_hours", "loss_degC_per_1000_hours"),
     ("unrecoverable_eff_frac", "unrecoverable_degC"),
 )
+
+
+def in_degrees(records: Records) -> tuple[Records, tuple[str, ...]]:
+    """Return records whose table ``wear`` is all in degrees, and sentences on what was assumed for it."""
+    wear = rows_of(records, "wear")
+    if not any(is_in_efficiency(row) for row in wear):
+        return records, ()
+    converted, assumed = wear_in_degrees(
+        wear,
+        engine_types=rows_of(records, "engine_types"),
+        cycles=rows_of(records, "cycles"),
+        ratings=rows_of(records, "ratings"),
+    )
+    table = records["wear"]
+    columns = {name: [row[name] for row in converted] for name in table.columns}
+    return replace(records, tables={**records.tables, "wear": replace(table, columns=columns)}), assumed
 
 
 def is_in_efficiency(row: Row) -> bool:
