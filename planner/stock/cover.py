@@ -19,7 +19,7 @@ from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import gammaln
+from scipy.special import gammaln, xlog1py, xlogy
 
 from sim.errors import RequestError
 
@@ -61,7 +61,7 @@ def chances(away: Away, most: int) -> Floats:
         size, p = mean / (spread - 1.0), 1.0 / spread
         log_p = gammaln(x + size) - gammaln(size) - gammaln(x + 1.0) + size * math.log(p) + x * math.log1p(-p)
         return np.asarray(np.exp(log_p))
-    return _two_binomials(mean, max(spread, least_spread(mean)), x)
+    return _two_binomials(mean, spread, x)
 
 
 def least_spread(mean: float) -> float:
@@ -72,26 +72,29 @@ def least_spread(mean: float) -> float:
 
 def _two_binomials(mean: float, spread: float, x: NDArray[np.int64]) -> Floats:
     """Return a mixture of Bin(k, p) with chance q and Bin(k + 1, p) else, with the mean and spread asked for."""
-    k, q, p = _mixture(mean, spread)
-    return q * _binomial(k, p, x) + (1.0 - q) * _binomial(k + 1, p, x)
+    k, q, p = _mixture(np.array([mean]), spread)
+    return np.asarray((q * _binomials(k, p, x.size - 1) + (1.0 - q) * _binomials(k + 1.0, p, x.size - 1))[:, 0])
 
 
-def _mixture(mean: float, spread: float) -> tuple[int, float, float]:
-    """Return k, q and p of the mixture of two binomials."""
-    a = (spread - 1.0) / mean  # squared coefficient of variation less 1 / mean, in -1 … 0
-    k = max(0, math.floor(-1.0 / a + _EQUAL))
+def _mixture(mean: Floats, spread: float) -> tuple[Floats, Floats, Floats]:
+    """Return k, q and p of the mixture of two binomials for each mean above zero."""
+    part = mean - np.floor(mean)
+    a = (np.maximum(spread, part * (1.0 - part) / mean) - 1.0) / mean  # E X (X - 1) / mean² - 1, in -1 … 0
+    k = np.floor(-1.0 / a + _EQUAL)
     # with k trials or one more: mean = (k + 1 - q) p, and E X (X - 1) = mean² (1 + a)
-    inside = max(0.0, -a * k * (1.0 + k) - k)
-    q = min(1.0, max(0.0, (1.0 + a * (1.0 + k) + math.sqrt(inside)) / (1.0 + a))) if a > -1.0 + _EQUAL else 1.0
-    return k, q, min(1.0, mean / (k + 1.0 - q))
+    inside = np.maximum(0.0, -a * k * (1.0 + k) - k)
+    room = np.where(a > -1.0 + _EQUAL, 1.0 + a, 1.0)
+    q = np.where(a > -1.0 + _EQUAL, np.clip((1.0 + a * (1.0 + k) + np.sqrt(inside)) / room, 0.0, 1.0), 1.0)
+    return k, q, np.minimum(1.0, mean / (k + 1.0 - q))
 
 
-def _binomial(n: int, p: float, x: NDArray[np.int64]) -> Floats:
-    if p >= 1.0:
-        return np.where(x == n, 1.0, 0.0)
+def _binomials(n: Floats, p: Floats, most: int) -> Floats:
+    """Return P(X = x) of binomial laws for x = 0 … ``most``, shape (most + 1, laws)."""
+    x = np.arange(most + 1)[:, None]
     inside = np.minimum(x, n)
     ways = gammaln(n + 1.0) - gammaln(inside + 1.0) - gammaln(n - inside + 1.0)
-    return np.where(x <= n, np.exp(ways + inside * math.log(p) + (n - inside) * math.log1p(-p)), 0.0)
+    log_p = ways + xlogy(inside, p) + xlog1py(n - inside, -p)
+    return np.asarray(np.where(x <= n, np.exp(log_p), 0.0))
 
 
 def cover(away: Away, most: int) -> Cover:
@@ -106,27 +109,28 @@ def cover(away: Away, most: int) -> Cover:
 
 
 def covers(means: Floats, most: int, *, spread: float = 1.0) -> Cover:
-    """Return cover and mean shortage for many means at once, each of shape (*means.shape, most + 1).
-
-    Poisson and negative binomial laws are built by their recurrence over all means together; other spreads one by
-    one.
-    """
+    """Return cover and mean shortage for many means at once, each of shape (*means.shape, most + 1)."""
     flat = np.asarray(means, dtype=np.float64).ravel()
-    if spread < 1.0 - _EQUAL or flat.max(initial=0.0) > _MOST_BY_RECURRENCE:
-        found = [cover(Away(float(mean), spread), most) for mean in flat]
-        below = np.array([one.cover_frac for one in found])
-        short = np.array([one.short_mean for one in found])
+    if flat.max(initial=0.0) > _MOST_BY_RECURRENCE:
+        law = np.array([chances(Away(float(mean), spread), most) for mean in flat]).T
+    elif spread < 1.0 - _EQUAL:
+        k, q, p = _mixture(np.maximum(flat, _EQUAL), spread)
+        law = q * _binomials(k, p, most) + (1.0 - q) * _binomials(k + 1.0, p, most)
+        law[:, flat == 0.0] = np.eye(most + 1, 1)
     else:
-        below = np.minimum(1.0, np.cumsum(_by_recurrence(flat, most, spread), axis=0)).T
-        missing = np.cumsum(1.0 - below[:, :-1], axis=1)
-        short = np.maximum(0.0, flat[:, None] - np.concatenate([np.zeros((flat.size, 1)), missing], axis=1))
+        law = _by_recurrence(flat, most, spread)
+    below = np.minimum(1.0, np.cumsum(law, axis=0)).T
+    missing = np.cumsum(1.0 - below[:, :-1], axis=1)
+    short = np.maximum(0.0, flat[:, None] - np.concatenate([np.zeros((flat.size, 1)), missing], axis=1))
     shape = (*np.shape(means), most + 1)
     return Cover(below.reshape(shape), short.reshape(shape))
 
 
 def _by_recurrence(mean: Floats, most: int, spread: float) -> Floats:
-    """Return P(X = x) for x = 0 … ``most``, shape (most + 1, means), by ``p(x + 1) = p(x) (a + b / (x + 1))``
-    (Panjer)."""
+    """Return P(X = x) of Poisson or negative binomial laws for x = 0 … ``most``, shape (most + 1, laws).
+
+    By Panjer's recurrence ``p(x + 1) = p(x) (a + b / (x + 1))``, faster than gamma functions.
+    """
     law = np.empty((most + 1, mean.size))
     if abs(spread - 1.0) < _EQUAL:
         law[0], a, b = np.exp(-mean), 0.0, mean
