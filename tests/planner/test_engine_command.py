@@ -87,11 +87,16 @@ def test_a_type_without_bypass_ratio_is_told_what_to_fill(tmp_path: Path, capsys
 
 def test_wear_in_efficiency_becomes_the_fleets_degrees(tmp_path: Path) -> None:
     wear = [
-        {"engine_type": "N", "rating": rating, "module": "HPT", "early_loss_eff_frac": "0.005", "spread_frac": "0.1"}
+        {
+            "engine_type": "N",
+            "rating": rating,
+            "module": module,
+            "early_loss_degC": "1" if module == "fan" else "",
+            "early_loss_eff_frac": "0.005" if module == "HPT" else "",
+            "spread_frac": "0.1",
+        }
+        for module in ("HPT", "fan")
         for rating in ("high", "low")
-    ]
-    wear += [
-        {"engine_type": "N", "rating": rating, "module": "fan", "early_loss_degC": "1"} for rating in ("high", "low")
     ]
     fleet = load(a_folder(tmp_path, wear=wear))
     high, low, fan = fleet.wear[0], fleet.wear[1], fleet.wear[2]
