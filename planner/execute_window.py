@@ -90,7 +90,9 @@ class Window:
             return
         came, _ = wait(self._on_way, timeout=TICK_SECONDS, return_when=FIRST_COMPLETED)
         for future in came:
-            indexes = self._on_way.pop(future)
+            indexes = self._on_way.pop(future, None)
+            if indexes is None:
+                continue  # taken back, when the place broke while an earlier one of these was taken in
             error = _failure_of(future)
             if error is not None:
                 self._tally.lose(indexes)

@@ -5,13 +5,16 @@ from __future__ import annotations
 import os
 import signal
 import time
+from concurrent.futures import Future
 from pathlib import Path
 
 import odd_jobs
 import pytest
 
+from planner import execute_pool
 from planner.errors import LostWorkersError
 from planner.execute import Where, execute, where_from
+from planner.identity import identity
 from planner.kept import Kept
 from planner.rows import pack
 from sim.errors import RequestError
@@ -121,6 +124,26 @@ def test_rows_that_are_all_at_hand_need_no_pool(tmp_path: Path, monkeypatch: pyt
         list(execute(odd_jobs.steady, {"name": "m"}, TASKS, where=HERE, kept=kept))
         monkeypatch.setattr("planner.execute._opened", None)
         assert _bytes(execute(odd_jobs.steady, {"name": "m"}, TASKS, where=TWO, kept=kept)) == _expected({"name": "m"})
+
+
+def test_ctrl_c_in_the_midst_of_handing_over_a_chunk_comes_after_it(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Interrupted there, loky would keep work that nobody does and wait for it at the end of the program."""
+    reached = []
+
+    class Executor:
+        def submit(self, *_: object) -> Future:
+            signal.raise_signal(signal.SIGINT)
+            reached.append("the end of submit")
+            return Future()
+
+    monkeypatch.setattr(execute_pool.loky, "get_reusable_executor", lambda **_: Executor())
+    pool = execute_pool.Pool(2, lambda text: None)
+    handler = signal.getsignal(signal.SIGINT)
+    with pytest.raises(KeyboardInterrupt):
+        pool.submit(identity(), b"")
+    pool.close()
+    assert reached == ["the end of submit"]
+    assert signal.getsignal(signal.SIGINT) is handler
 
 
 def test_progress_rises_to_the_total_and_foretells_the_time_left() -> None:
