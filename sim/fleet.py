@@ -60,6 +60,7 @@ class EngineType:
     reference_derate_frac: float = 0.08
     wear_frac_per_derate_frac: float = 2.0
     cover_wanted_frac: float | None = None
+    build_goal_frac: float = 1.0
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

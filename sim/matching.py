@@ -67,7 +67,7 @@ class Matching:
         planned = planned_removal(engine, flying, now, self._until(aircraft))
         if planned.cycles < 1:
             return math.inf
-        if self.world.setup.strategy.match == "first":
+        if self.world.setup.strategy[engine.spec.engine_type].match == "first":
             return engine.pool_day
         return self._life_match(aircraft, position, engine, planned.cycles)
 
@@ -111,7 +111,7 @@ class Matching:
         world = self.world
         if world.renting.call_back(engine.spec.engine_type):
             return
-        ahead = world.setup.strategy.plan_ahead_cycles
+        ahead = world.setup.strategy[engine.spec.engine_type].plan_ahead_cycles
         if ahead <= 0:
             return
         best: tuple[float, str, AircraftProcess, int] | None = None

@@ -38,7 +38,7 @@ class Renting:
 
     def look_out(self, aircraft: AircraftProcess) -> None:
         """An aircraft begins to wait: seek a lease-in after the strategy's set time."""
-        after = self.world.setup.strategy.lease_in_after_days
+        after = self.world.setup.strategy[aircraft.row.engine_type].lease_in_after_days
         market = self.world.setup.market.get(aircraft.row.engine_type)
         if after is None or market is None:
             return

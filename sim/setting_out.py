@@ -166,7 +166,7 @@ def _expected_ready(world: World, row: Engine) -> float:
 def begun_scope(world: World, row: Engine, engine: EngineState) -> Scope:
     """Return what a visit under way does, by its kind: an overhaul restores all modules, a core visit the core, any
     visit checks the rest; parts short of the build goal in opened modules are new."""
-    goal = world.setup.strategy.build_goal_cycles
+    goal = world.setup.strategy[row.engine_type].build_goal_cycles
     rating = world.matching.rating_of(engine)
     levels = []
     for module in engine.modules:
@@ -194,7 +194,10 @@ def _place_modules(world: World, rows: tuple[Module, ...], modules: dict[str, Mo
             level = _LEVELS[row.level_in_work] or RESTORATION
             rating = world.matching.default_rating(row.engine_type)
             _, replace = world.bench.module_scope(
-                state, Removal(0, "limit", state.spec.slot), rating, world.setup.strategy.build_goal_cycles
+                state,
+                Removal(0, "limit", state.spec.slot),
+                rating,
+                world.setup.strategy[row.engine_type].build_goal_cycles,
             )
             world.bench.work_on_module(state, level, replace, day=0.0, rating=rating)
             ready = max(0.0, row.ready_day if row.ready_day is not None else state.spec.repair.mean_days)

@@ -7,10 +7,11 @@ in the order of ``ratings``; a module number is called a *slot*.
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from typing import NamedTuple
 
 from sim.errors import RequestError
-from sim.fleet import Aircraft, Fleet, LeaseMarket, Strategy, Team, Wash
+from sim.fleet import Aircraft, EngineType, Fleet, LeaseMarket, Strategy, Team, Wash
 from sim.pricing import Catalogue, catalogue
 from sim.season import Season
 from sim.wear import WearLaw, wear_law
@@ -118,7 +119,7 @@ class Setup(NamedTuple):
     """All that a run reads."""
 
     fleet: Fleet
-    strategy: Strategy
+    strategy: dict[str, Strategy]
     horizon_days: float
     season: Season
     catalogue: Catalogue
@@ -272,6 +273,17 @@ def _shop_specs(fleet: Fleet, engine_type: str) -> tuple[ShopSpec, ...]:
     return tuple(specs)
 
 
+def _for_type(row: Strategy, kind: EngineType) -> Strategy:
+    """Return a strategy with its cycles scaled for a type: long-haul types live on far fewer cycles."""
+    frac = kind.build_goal_frac
+    return replace(
+        row,
+        build_goal_cycles=max(1, round(row.build_goal_cycles * frac)),
+        stub_cycles=round(row.stub_cycles * frac),
+        plan_ahead_cycles=round(row.plan_ahead_cycles * frac),
+    )
+
+
 def setup(fleet: Fleet, strategy: str, *, horizon_days: float, sweep_days: tuple[float, ...] = ()) -> Setup:
     """Return the run-ready form of a fleet under one of its strategies.
 
@@ -285,7 +297,7 @@ def setup(fleet: Fleet, strategy: str, *, horizon_days: float, sweep_days: tuple
         raise RequestError("horizon", f"{horizon_days:g} days", "more than 0 and at most 60 years")
     return Setup(
         fleet=fleet,
-        strategy=rows[strategy],
+        strategy={t.engine_type: _for_type(rows[strategy], t) for t in fleet.engine_types},
         horizon_days=horizon_days,
         season=Season(fleet.settings.as_of, fleet.season),
         catalogue=catalogue(fleet),

@@ -109,7 +109,7 @@ class World:
 
     def _decide(self, aircraft: AircraftProcess, engine: EngineState, removal: Removal) -> Decision:
         view = self.matching.view(aircraft, engine, removal)
-        decision = decide(view, self.setup.strategy, self.catalogue, rate_frac=self.rate_frac)
+        decision = decide(view, self.setup.strategy[engine.spec.engine_type], self.catalogue, rate_frac=self.rate_frac)
         self._log_decision(engine, view, decision)
         return decision
 
@@ -198,7 +198,7 @@ class World:
         uniform = self.module_luck.draw("repair", module.index, module.repairs)
         stay = module.spec.repair.drawn(uniform, normal(uniform))
         begin = books[number].start(self.env.now + shop.transport_days, stay)
-        level, replace = self.bench.module_scope(module, removal, rating, self.setup.strategy.build_goal_cycles)
+        level, replace = self.bench.module_scope(module, removal, rating, self.setup.strategy[kind].build_goal_cycles)
 
         def finish() -> None:
             self.bench.work_on_module(module, level, replace, day=begin + stay, rating=rating)
@@ -273,11 +273,13 @@ class World:
             if entry in self.waiting_modules:
                 self.waiting_modules.remove(entry)
                 view = self.matching.view(aircraft, engine, removal)._replace(coming=())
-                decision = decide(view, self.setup.strategy, self.catalogue, rate_frac=self.rate_frac)
+                decision = decide(
+                    view, self.setup.strategy[engine.spec.engine_type], self.catalogue, rate_frac=self.rate_frac
+                )
                 self._log_decision(engine, view, decision)
                 self.carry_out(aircraft, engine, removal, decision)
 
-        self.at(self.env.now + self.setup.strategy.wait_for_module_days, give_up)
+        self.at(self.env.now + self.setup.strategy[engine.spec.engine_type].wait_for_module_days, give_up)
 
     # pools -------------------------------------------------------------------------------------------------------
 

@@ -140,6 +140,14 @@ _TABLES: tuple[Table, ...] = (
                 "wanted chance that no aircraft is short (blank: the setting)",
                 high=0.9999,
             ),
+            number(
+                "build_goal_frac",
+                "Share of the goals",
+                "share of a strategy's cycles (build goal, stub, plan ahead) that holds for this type",
+                default=1.0,
+                low=0.01,
+                high=10,
+            ),
         ),
     ),
     Table(
