@@ -42,7 +42,9 @@ class Cluster:
         self._address, self._notice, self._patience = address, notice, patience_seconds
         self._own: LocalCluster | None = None
         if address == "local":
-            self._own = LocalCluster(n_workers=workers or cores(), threads_per_worker=1, dashboard_address=None)
+            # A free port of this machine alone: by default the page of Dask would stand open, on one fixed port.
+            page = "127.0.0.1:0"
+            self._own = LocalCluster(n_workers=workers or cores(), threads_per_worker=1, dashboard_address=page)
         try:
             self._client = Client(self._own or address, timeout=CONNECT_SECONDS, set_as_default=False)
         except (OSError, ValueError) as error:
