@@ -155,7 +155,7 @@ _RANGES: tuple[tuple[str, str, float, float], ...] = (
     ("nozzle_velocity_coefficient", "nozzle velocity coefficient", 0.9, 1.0),
     ("shaft_efficiency", "shaft efficiency", 0.9, 1.0),
     ("fuel_heat_J_per_kg", "lower heating value, J/kg", 40e6, 46e6),
-    ("loading_slope", "slope of the compressor characteristic", 0.2, 4.0),
+    ("loading_slope", "slope of the compressor characteristic", 0.2, 20.0),
 )
 
 OVERALL_RANGE = (10.0, 60.0)

@@ -8,7 +8,7 @@ for every outcome y (EGT, fuel), with all partial slopes from one evaluation of 
 EGT is taken at the corner-point day at the rating's full thrust, fuel there and in cruise; thrust is held.
 
 Bands: each input that is not known exactly is moved up and down by its uncertainty, and the moves of a coefficient are
-added as a root of squares; ``MODEL_SHARE`` of the coefficient is added the same way for what the model leaves out.
+added as a root of squares; a share of the coefficient is added the same way for what the model leaves out.
 """
 
 from __future__ import annotations
@@ -31,7 +31,9 @@ LPT_INLET, LPT_EXIT = "lpt_inlet", "lpt_exit"
 STATIONS = (LPT_INLET, LPT_EXIT)
 
 POINT = 0.01
-MODEL_SHARE = 0.10
+MODEL_SHARE_EGT, MODEL_SHARE_FUEL, MODEL_SHARE_AMBIENT = 0.30, 0.12, 0.10
+"""Share of a coefficient that the model may be off by: the root-mean-square difference to an open-source cycle with
+component maps of its own (tests/outside/test_open_cycle_library.py, sim/METHOD.md); for ambient own judgement."""
 
 _STEP = 1e-5
 _OUTCOMES = 3
@@ -56,9 +58,9 @@ UNCERTAIN: tuple[Uncertain, ...] = (
     Uncertain("hpt_efficiency", 0.02, 0.01, False),
     Uncertain("lpt_efficiency", 0.015, 0.005, False),
     Uncertain("ngv_cooling", 0.04, 0.02, False),
-    Uncertain("loading_slope", 0.5, 0.5, True),
+    Uncertain("loading_slope", 2.0, 2.0, True),
 )
-"""Own judgement from the spread of published cycles; no source. The slope is never known."""
+"""Own judgement from the spread of published cycles; no source. The slope is never known, from a third to three times."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -170,7 +172,7 @@ def _variants(path: GasPath[float], given: frozenset[str]) -> list[GasPath[float
         value = getattr(path, name)
         width = known if name in given else by_rule
         for sign in (1.0, -1.0):
-            moved = value * (1.0 + sign * width) if relative else value + sign * width
+            moved = value * (1.0 + width) ** sign if relative else value + sign * width
             if name.endswith("_pressure_ratio"):
                 moved = max(moved, 1.0)
             hpc = path.hpc_pressure_ratio * (value / moved if name.endswith("_pressure_ratio") else 1.0)
@@ -238,10 +240,10 @@ def _matrix(path: GasPath[float], conditions: Conditions, station: str, *, level
     coefficients = tuple(
         Coefficient(
             change,
-            _band(slope[probe, k, 0] * POINT),
-            _band(slope[probe, k, 0] * POINT / egt),
-            _band(slope[fuel, k, 0] * POINT / level[fuel, 0]),
-            _band(slope[fuel, k, 1] * POINT / level[fuel, 1]),
+            _band(slope[probe, k, 0] * POINT, model=MODEL_SHARE_EGT),
+            _band(slope[probe, k, 0] * POINT / egt, model=MODEL_SHARE_EGT),
+            _band(slope[fuel, k, 0] * POINT / level[fuel, 0], model=MODEL_SHARE_FUEL),
+            _band(slope[fuel, k, 1] * POINT / level[fuel, 1], model=MODEL_SHARE_FUEL),
         )
         for k, change in enumerate(changes_of(path.spools))
     )
@@ -253,13 +255,13 @@ def _matrix(path: GasPath[float], conditions: Conditions, station: str, *, level
         lpt_exit_K=float(level[1, 0, 0]),
         takeoff_fuel_kg_per_s=float(level[fuel, 0, 0]),
         cruise_fuel_kg_per_s=float(level[fuel, 1, 0]),
-        egt_per_ambient=_band(slope[probe, -2, 0]),
-        egt_K_per_thrust_point=_band(slope[probe, -1, 0] * POINT),
+        egt_per_ambient=_band(slope[probe, -2, 0], model=MODEL_SHARE_AMBIENT),
+        egt_K_per_thrust_point=_band(slope[probe, -1, 0] * POINT, model=MODEL_SHARE_AMBIENT),
         coefficients=coefficients,
     )
 
 
-def _band(values: Values) -> Band:
+def _band(values: Values, *, model: float) -> Band:
     """Return the first value with a band from the moves of the others, pairs of up and down.
 
     Where an input cannot be moved one way (no engine is left), the other way stands for both.
@@ -267,7 +269,7 @@ def _band(values: Values) -> Band:
     value = float(values[0])
     moves = (values[1:] - value).reshape(-1, 2)
     moves = np.nan_to_num(np.where(np.isnan(moves), -moves[:, ::-1], moves))
-    model = MODEL_SHARE * abs(value)
-    up = float(np.sqrt(np.sum(np.maximum(moves.max(axis=1), 0.0) ** 2) + model**2))
-    down = float(np.sqrt(np.sum(np.minimum(moves.min(axis=1), 0.0) ** 2) + model**2))
+    share = model * abs(value)
+    up = float(np.sqrt(np.sum(np.maximum(moves.max(axis=1), 0.0) ** 2) + share**2))
+    down = float(np.sqrt(np.sum(np.minimum(moves.min(axis=1), 0.0) ** 2) + share**2))
     return Band(value, value - down, value + up)

@@ -98,7 +98,7 @@ WIDE = st.fixed_dictionaries(
         "turbine_entry_K": st.floats(1400.0, 1900.0),
         "hpc_efficiency": st.floats(0.82, 0.9),
         "lpt_efficiency": st.floats(0.88, 0.94),
-        "loading_slope": st.floats(0.5, 2.0),
+        "loading_slope": st.floats(0.5, 10.0),
         "spools": st.sampled_from([2, 3]),
         "exhaust": st.sampled_from(["separate", "mixed"]),
     }
