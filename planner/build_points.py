@@ -18,23 +18,24 @@ from planner.openings import Install, Openings
 from sim.errors import RequestError
 
 Money = Callable[[float], float]  # cycles from now -> USD of today
+Life = Callable[[float], float]  # cycles from now at installation -> cycles that it may fly from then on
 
 _EXACT_LIMITS = 6  # how many of the soonest dates become points of their own
 _NEAR_FRAC = 0.25  # two points nearer than this share of a step become one, the earlier
 
 
 class UsedPart(NamedTuple):
-    """A part of known remaining life that can be had once: cycles left, price, and from when it is there."""
+    """A part of known remaining life that can be had once: its life when installed, price, from when it is there."""
 
     part_serial: str
-    left_cycles: int
+    life: Life
     price: Money
     from_cycles: float = 0.0
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class BuildPart:
-    """A part that carries life: what it has left, the life and price of a new one, used ones, worth at the end.
+    """A part that carries life: what it has left, life and price of a new one, used ones, worth at the end.
 
     ``end`` gives the money (present value, negative to pay) for so many cycles left at the end of the plan.
     """
@@ -43,7 +44,7 @@ class BuildPart:
     part_number: str
     module: int
     left_cycles: int
-    new_cycles: int
+    life: Life
     price: Money
     end: Money
     used: tuple[UsedPart, ...] = ()
@@ -75,14 +76,15 @@ class BuildModule:
 class BuildProblem:
     """One engine from now to the end of the plan. ``visit`` is what an opening costs that no module carries.
 
-    ``budget_degC`` is the loss that uses the margin up, ``end_budget_degC`` what may be lost at the end.
+    ``budget_degC`` is the loss that uses the margin up, by cycles from now; ``end_budget_degC`` what may be lost at the
+    end.
     """
 
     modules: tuple[BuildModule, ...]
     parts: tuple[BuildPart, ...]
     end_cycles: float
     visit: Money
-    budget_degC: float
+    budget_degC: Callable[[float], float]
     end_budget_degC: float | None = None
     must_visit: bool = False
     must_open: tuple[int, ...] = ()
@@ -98,7 +100,7 @@ def points_of(problem: BuildProblem, *, step_cycles: float) -> tuple[float, ...]
     run_out = _margin_run_out(problem)
     if run_out is not None:
         soonest.append(run_out)
-    even = [step * step_cycles for step in range(1, int(np.ceil(end / step_cycles)))]
+    even = [float(round(step * step_cycles)) for step in range(1, int(np.ceil(end / step_cycles)))]
     exact = {0.0, end, *soonest}
     points = sorted(exact)
     for point in even:
@@ -124,9 +126,9 @@ def openings_of(problem: BuildProblem, *, points: tuple[float, ...]) -> Openings
                 risk = _run_usd(module, 0.0, age, until=at, last=end == steps)
                 run_usd[number, start, end] = module.restore(points[start]) + risk
                 run_loss[number, start, end] = module.loss_after(age)
-    budget = np.full(steps + 1, problem.budget_degC)
+    budget = np.array([problem.budget_degC(at) for at in points])
     if problem.end_budget_degC is not None:
-        budget[steps] = min(problem.budget_degC, problem.end_budget_degC)
+        budget[steps] = min(budget[steps], problem.end_budget_degC)
     in_front = np.zeros((len(modules), len(modules)), dtype=np.bool_)
     for number, module in enumerate(modules):
         in_front[number, list(module.in_front)] = True
@@ -161,14 +163,15 @@ def _installs(problem: BuildProblem, points: tuple[float, ...]) -> tuple[Install
     stocks: dict[str, int] = {}
     found = []
     for number, part in enumerate(problem.parts):
-        new = UsedPart("", part.new_cycles, part.price)
+        new = UsedPart("", part.life, part.price)
         for kind in (new, *part.used):
             stock = stocks.setdefault(kind.part_serial, len(stocks)) if kind.part_serial else -1
             for at, cycles in enumerate(points[:-1]):
-                until = _reached(points, cycles, kind.left_cycles)
+                life = kind.life(cycles)
+                until = _reached(points, cycles, life)
                 if cycles < kind.from_cycles or until <= at:
                     continue
-                worth = part.end(cycles + kind.left_cycles - end) if until == steps else 0.0
+                worth = part.end(cycles + life - end) if until == steps else 0.0
                 found.append(Install(number, at, until, kind.price(cycles) - worth, stock))
     return tuple(found)
 
@@ -186,13 +189,13 @@ def _reached(points: tuple[float, ...], start: float, life: float) -> int:
 def _margin_run_out(problem: BuildProblem) -> float | None:
     """Return the last whole cycle within the margin when nothing is restored, None when it lasts to the end."""
 
-    def lost(cycles: float) -> float:
-        return sum(module.loss_now(cycles) for module in problem.modules)
+    def within(cycles: float) -> bool:
+        return sum(module.loss_now(cycles) for module in problem.modules) <= problem.budget_degC(cycles)
 
-    if lost(problem.end_cycles) <= problem.budget_degC or lost(1.0) > problem.budget_degC:
+    if within(problem.end_cycles) or not within(1.0):
         return None
     low, high = 1, int(np.ceil(problem.end_cycles))
     while high - low > 1:
         middle = (low + high) // 2
-        low, high = (middle, high) if lost(middle) <= problem.budget_degC else (low, middle)
+        low, high = (middle, high) if within(middle) else (low, middle)
     return float(low)

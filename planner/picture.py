@@ -17,7 +17,7 @@ from planner.planned_use import PlannedUse
 from sim import start
 from sim.aircraft import AircraftProcess
 from sim.errors import RequestError
-from sim.fleet import Engine, Fleet, Lease
+from sim.fleet import Engine, Fleet, Lease, Strategy
 from sim.removal import Removal, planned_removal
 from sim.setting_out import set_out
 from sim.spec import Setup, setup
@@ -68,6 +68,10 @@ class Picture:
                 "engine", serial, "an engine serial of the records", f"did you mean {near}?" if near else ""
             )
         return self.engines[serial]
+
+    def strategy(self, kind: str) -> Strategy:
+        """Return the goals that plans of an engine type are made for."""
+        return self.setup.strategy[kind]
 
     def lease_of(self, tail: str) -> Lease | None:
         return next((lease for lease in self.fleet.leases if lease.tail == tail), None)

@@ -73,7 +73,7 @@ class Off(NamedTuple):
 def costed_ways(off: Off, *, shelf: str, begin: float | None = None) -> tuple[Way, ...]:
     """Return A1, A2 and, for each module that could go in, B; the share of later core visits is settled among them."""
     view, seen = off.view, off.seen
-    strategy = view.setup.strategy
+    strategy = view.strategy(seen.spec.engine_type)
     goal, stub = strategy.build_goal_cycles, strategy.stub_cycles
     ways = []
     for name, only, reach in (("A1", True, stub), ("A2", False, _stub_that_opens_the_core(seen, stub))):
@@ -131,14 +131,14 @@ def _candidates(off: Off, *, shelf: str) -> list[tuple[tuple[int, ...], tuple[Mo
 
 
 def _exchange_way(off: Off, slots: tuple[int, ...], modules: tuple[ModuleState | None, ...], *, shelf: str) -> Way:
-    view, seen, strategy = off.view, off.seen, off.view.setup.strategy
+    view, seen = off.view, off.seen
     lines: list[Line] = []
     put_in: dict[int, ModuleState] = {}
     away = 0.0
     for slot, module in zip(slots, modules, strict=True):
         own, as_seen = off.engine.modules[slot], seen.modules[slot]
         level = repair_level(as_seen, seen.spec, cause=seen.cause, least_level=seen.least_level)
-        goal = strategy.build_goal_cycles
+        goal = view.strategy(seen.spec.engine_type).build_goal_cycles
         short = tuple(i for i, p in enumerate(as_seen.parts) if p.left_cycles < min(goal, p.limit_cycles))
         stocked = shelf == "full"
         lines += exchange_lines(view, seen, own, day=seen.day, level=level, replace=short, from_shelf=stocked)

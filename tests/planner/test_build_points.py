@@ -35,7 +35,7 @@ def part(**change: object) -> BuildPart:
         part_number="DISK",
         module=0,
         left_cycles=2_000,
-        new_cycles=10_000,
+        life=flat(10_000),
         price=flat(300_000),
         end=lambda left: 30.0 * left,
     )
@@ -43,17 +43,19 @@ def part(**change: object) -> BuildPart:
 
 
 def engine(**change: object) -> BuildProblem:
-    plain = BuildProblem(modules=(module(),), parts=(part(),), end_cycles=6_000, visit=flat(50_000), budget_degC=20.0)
+    plain = BuildProblem(
+        modules=(module(),), parts=(part(),), end_cycles=6_000, visit=flat(50_000), budget_degC=flat(20.0)
+    )
     return dataclasses.replace(plain, **change)
 
 
 def test_points_hold_the_present_limits_and_the_margin_exactly() -> None:
-    problem = engine(parts=(part(), part(left_cycles=2_345)), budget_degC=4.1)
+    problem = engine(parts=(part(), part(left_cycles=2_345)), budget_degC=flat(4.1))
     assert points_of(problem, step_cycles=1_000) == (0, 1_000, 2_000, 2_345, 3_000, 4_100, 5_000, 6_000)
 
 
 def test_a_life_is_counted_down_to_the_last_point_it_reaches() -> None:
-    arrays = openings_of(engine(parts=(part(new_cycles=2_999),)), points=(0, 1_000, 2_000, 3_000, 6_000))
+    arrays = openings_of(engine(parts=(part(life=flat(2_999)),)), points=(0, 1_000, 2_000, 3_000, 6_000))
     assert arrays.keep_until.tolist() == [2]
     assert [(one.at, one.until) for one in arrays.installs] == [(0, 2), (1, 3), (2, 3)]
 
@@ -67,7 +69,7 @@ def test_one_part_worked_by_hand() -> None:
 
 
 def test_a_used_part_of_just_enough_life_is_taken() -> None:
-    used = UsedPart("D9", 4_000, flat(90_000))
+    used = UsedPart("D9", flat(4_000), flat(90_000))
     problem = engine(parts=(part(used=(used,)),))
     best = open_at_best(openings_of(problem, points=points_of(problem, step_cycles=1_000)))
     assert used_serials(problem) == ("D9",)
@@ -76,7 +78,7 @@ def test_a_used_part_of_just_enough_life_is_taken() -> None:
 
 
 def test_a_used_part_that_comes_too_late_is_not() -> None:
-    used = UsedPart("D9", 4_000, flat(90_000), from_cycles=2_500)
+    used = UsedPart("D9", flat(4_000), flat(90_000), from_cycles=2_500)
     problem = engine(parts=(part(used=(used,)),))
     best = open_at_best(openings_of(problem, points=points_of(problem, step_cycles=1_000)))
     assert [one.stock for one in best.installs] == [-1]
