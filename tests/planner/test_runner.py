@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import inspect
 import os
 import signal
 import subprocess
@@ -198,5 +199,7 @@ def test_a_home_that_cannot_be_written_is_a_clear_error(tmp_path: Path) -> None:
         runner.submit({"command": "odd"}, user="ann", home=tmp_path / "home")
 
 
-def test_a_request_can_name_only_the_functions_that_are_listed() -> None:
-    assert all(name.startswith("planner.") for name in runner_process.ANSWERS.values())
+def test_every_question_of_the_runner_has_a_function_that_answers_it() -> None:
+    for name in runner_process.ANSWERS.values():
+        wanted = {"request", "progress", "cancelled", "notice", "note"}
+        assert set(inspect.signature(runner_process._load(name)).parameters) == wanted
