@@ -42,14 +42,21 @@ def history_by_part(records: Records) -> dict[str, dict[str, int]]:
     return totals
 
 
+def _clocks(records: Records) -> tuple[set[str], set[str]]:
+    """Return the part numbers that have a limit in hours, and those that have one in days."""
+    rows = list(records["part_limits"].pick("part_number", "limit_hours", "limit_days"))
+    return {number for _, number, hours, _ in rows if hours}, {number for _, number, _, days in rows if days}
+
+
 def flown_by_part(records: Records) -> list[PartLife]:
     """Return the life of each row of ``parts``, in their order."""
     history = history_by_part(records)
     lowest = lowest_ratings(records)
     with_history = records.given("part_history")
+    in_hours, in_days = _clocks(records)
     lives = []
-    rows = records["parts"].pick("part_serial", "part_number", "cycles_since_new", "status_substantiated")
-    for _, serial, number, cycles, substantiated in rows:
+    names = ("part_serial", "part_number", "cycles_since_new", "hours_since_new", "made_date", "status_substantiated")
+    for _, serial, number, cycles, hours, made, substantiated in records["parts"].pick(*names):
         flown = dict(history.get(serial, {}))
         short = (cycles or 0) - sum(flown.values())
         if short > 0:
@@ -61,6 +68,10 @@ def flown_by_part(records: Records) -> list[PartLife]:
             why = "cycles since new are blank"
         elif short > 0 and with_history:
             why = f"history is {short:,} cycles short"
+        elif hours is None and number in in_hours:
+            why = "hours since new are blank and its limit counts hours"
+        elif made is None and number in in_days:
+            why = "the day of manufacture is blank and its limit counts days"
         elif not substantiated:
             why = "status is not substantiated"
         lives.append(PartLife(tuple(flown.items()), not why, why))

@@ -83,7 +83,7 @@ def _problem(rule: Rule, fault: Fault, file: str) -> Problem:
         fault.column,
         rule.severity,
         rule.name,
-        shown(fault.found),
+        shown(fault.found).strip() or "blank",
         fault.expected,
         fault.message,
     )
