@@ -60,7 +60,7 @@ UNCERTAIN: tuple[Uncertain, ...] = (
     Uncertain("ngv_cooling", 0.04, 0.02, False),
     Uncertain("loading_slope", 2.0, 2.0, True),
 )
-"""Own judgement from the spread of published cycles; no source. The slope is never known, from a third to three times."""
+"""Own judgement from the spread of published cycles; no source. The slope is never known: a third to three times."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
