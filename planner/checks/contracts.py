@@ -10,6 +10,8 @@ from planner.checks.fault import Fault, Rule, did_you_mean, stops, warns
 
 _TOGETHER_DAYS = 60  # removals of one aircraft's engines within this many days send both away together
 
+_OPERATOR = "the operator"  # a blank owner
+
 
 def leases_name_one_aircraft_or_engine(facts: Facts) -> Iterator[Fault]:
     for row, lease, tail, engine in facts.records["leases"].pick("lease", "tail", "engine_serial"):
@@ -73,9 +75,10 @@ def modules_fly_on_engines_of_their_owner(facts: Facts) -> Iterator[Fault]:
 def parts_fly_in_modules_of_their_owner(facts: Facts) -> Iterator[Fault]:
     for row, serial, module_serial, owner in facts.records["parts"].pick("part_serial", "module_serial", "owner"):
         module = facts.modules.get(module_serial or "")
-        if module and owner and module.owner and owner != module.owner:
-            message = f"{serial} of {owner} is in module {module_serial} of {module.owner}; it must go back"
-            yield Fault("parts", row, "owner", owner, module.owner, message)
+        if module and owner != module.owner and None not in (owner, module.owner):
+            whose, other = owner or _OPERATOR, module.owner or _OPERATOR
+            message = f"{serial} of {whose} is in module {module_serial} of {other}; it must go back"
+            yield Fault("parts", row, "owner", owner, other, message)
 
 
 def bought_ratings_say_what_follows(facts: Facts) -> Iterator[Fault]:

@@ -9,8 +9,10 @@ from planner.schema import (
     output_tables,
     plan_outputs,
     plan_tables,
+    record_outputs,
     saved_outputs,
     setting_tables,
+    stock_outputs,
     work_tables,
 )
 from planner.schema.column import Table
@@ -26,6 +28,8 @@ OUTPUTS: dict[str, Table] = {
     **output_tables.TABLES,
     **engine_outputs.TABLES,
     **plan_outputs.TABLES,
+    **record_outputs.TABLES,
     **saved_outputs.TABLES,
+    **stock_outputs.TABLES,
 }
 NEEDED: tuple[str, ...] = tuple(name for name, table in TABLES.items() if table.needed)
