@@ -1,14 +1,15 @@
 """Money after events: every row that a run left is priced, escalated by index and discounted by its day.
 
 Present cost of a point row: amount x price x escalation(day) x (1 + rate) ** (-days / 365.25). A span is spread evenly
-over its days, split at calendar years, and discounted by the mean factor of each piece. The lines add up to the total by
-year and engine type. An unpriced event is an error, never a zero. numpy only: this runs inside a worker.
+over its days, split at calendar years, and discounted by the mean factor of each piece. The lines add up to the total
+by year and engine type. An unpriced event is an error, never a zero. numpy only: this runs inside a worker.
 """
 
 from __future__ import annotations
 
 import datetime as dt
 import math
+from bisect import bisect_right
 from typing import NamedTuple
 
 import numpy as np
@@ -26,7 +27,8 @@ _IS_VALUE = np.array([line in VALUE_LINES for line in LINES])
 
 
 class Priced(NamedTuple):
-    """Present cost in USD: ``costs`` of shape (years, engine types, lines), ``total`` on the consumption basis, ``cash``
+    """Present cost in USD: ``costs`` of shape (years, engine types, lines), ``total`` on the consumption basis,
+    ``cash``
     alone."""
 
     costs: Floats
@@ -52,6 +54,9 @@ class Ledger:
         self._rate = math.log1p(settings.discount_rate_frac) / 365.25
         self._types = {name: i for i, name in enumerate(setup.types)}
         self._indices = _index_steps(setup)
+        self._starts = self._year_starts.tolist()
+        self._all_steps = sorted({day for _, _, steps in self._indices for day in steps.tolist()})
+        self._unit_prices: dict[tuple[int, int], float] = {}
         self._read_catalogue()
 
     def _read_catalogue(self) -> None:
@@ -61,6 +66,7 @@ class Ledger:
         self._price = np.array([item.price_usd for item in items])
         self._line = np.array([LINES.index(item.line) for item in items])
         self._type = np.array([self._types.get(item.engine_type, 0) for item in items])
+        self._unit_prices.clear()
         self._shares = np.zeros((len(items), len(names) + 1))
         for i, item in enumerate(items):
             known = [(names.index(index), share) for index, share in item.shares if index in names]
@@ -84,11 +90,16 @@ class Ledger:
 
     def unit_price(self, item: int, day: float) -> float:
         """Return the escalated price in USD of one unit on a day, not discounted."""
-        return float(self._price[item] * self._escalation(np.array([item]), np.array([day]))[0])
+        lists = bisect_right(self._all_steps, day)
+        found = self._unit_prices.get((item, lists))
+        if found is None:
+            found = float(self._price[item] * self._escalation(np.array([item]), np.array([day]))[0])
+            self._unit_prices[item, lists] = found
+        return found
 
     def year_of(self, day: float) -> int:
         """Return the number of the calendar year of a day."""
-        return int(self._year(np.array([day]))[0])
+        return min(max(0, bisect_right(self._starts, day) - 1), len(self.years) - 1)
 
     @staticmethod
     def columns(log: Log) -> tuple[Floats, NDArray[np.int64]]:

@@ -1,8 +1,9 @@
 """One aircraft: it flies while all its positions are filled, and waits once for the first thing that stops it.
 
 A looping process an aircraft, one timeout an installation. Time is counted in flown cycles of this aircraft and mapped
-to a day through the season. A change from outside (an early pull, a leased engine called back, a day of valuation) rings
-the bell: what was flown is booked and a new wait begins; the old wait's timeout finds its own bell rung and does nothing.
+to a day through the season. A change from outside (an early pull, a leased engine called back, a day of valuation)
+rings the bell: what was flown is booked and a new wait begins; the old wait's timeout finds its own bell rung and
+does nothing.
 """
 
 from __future__ import annotations

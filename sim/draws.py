@@ -90,13 +90,14 @@ class Luck:
 
     def draw(self, purpose: str, index: int, number: int) -> float:
         """Return draw ``number`` of the entity at ``index``."""
-        row: list[float] = self._rows[purpose][index]
-        while number >= len(row):  # as many again as there are, so that long lives stay cheap
-            here = self._names[index : index + 1]
-            block = len(row) // 2
-            more = uniforms(here, seed=self.seed, run=self.run, purpose=purpose, block=block, blocks=block)
-            row.extend(more[0].tolist())
-        return row[number]
+        rows = self._rows[purpose]
+        while number >= len(rows[index]):  # as many again for everybody: one vectorised call costs little more than one
+            block = len(rows[index]) // 2
+            more = uniforms(self._names, seed=self.seed, run=self.run, purpose=purpose, block=block, blocks=block)
+            for row, further in zip(rows, more.tolist(), strict=True):
+                row.extend(further)
+        drawn: float = rows[index][number]
+        return drawn
 
     def named(self, name: int, purpose: str, number: int) -> float:
         """Return a draw of an entity that is not in the list."""

@@ -1,7 +1,7 @@
 """The rows that a run leaves: one tuple an event, physical only, never money.
 
-Kinds and what their fields hold (METHOD.md lists them). ``item`` numbers the catalogue of sim/pricing.py, or is -1 for a
-plain fact; ``amount`` counts that item. ``until`` is later than ``day`` where the amount is spread over a span.
+Kinds and what their fields hold (METHOD.md lists them). ``item`` numbers the catalogue of sim/pricing.py, or is -1
+for a plain fact; ``amount`` counts that item. ``until`` is later than ``day`` where the amount is spread over a span.
 ``booked`` is the day that decides whether the row falls inside a horizon (a visit is booked at its induction).
 """
 

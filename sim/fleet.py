@@ -1,8 +1,8 @@
 """The fleet as values: one frozen row for each row of a table, and the fleet that holds them all.
 
-Fields carry the names of the tables' columns. Dates are days from the as-of date (``x_date`` becomes ``x_day``; None where
-the table is blank), lists are tuples, yes and no are booleans. Nothing here computes: life, wear and prices have their
-own files, and a scenario is ``dataclasses.replace`` of a fleet.
+Fields carry the names of the tables' columns. Dates are days from the as-of date (``x_date`` becomes ``x_day``; None
+where the table is blank), lists are tuples, yes and no are booleans. Nothing here computes: life, wear and prices
+have their own files, and a scenario is ``dataclasses.replace`` of a fleet.
 """
 
 from __future__ import annotations

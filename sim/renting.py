@@ -5,7 +5,6 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING
 
-from sim.draws import entity, one_uniform
 from sim.events import KIND
 from sim.state import EngineState, ModuleState
 
@@ -57,7 +56,7 @@ class Renting:
         tail = aircraft.row.tail
         number = self.requests.get(tail, 0)
         self.requests[tail] = number + 1
-        uniform = one_uniform(entity("lease", tail), seed=world.seed, run=world.run, purpose="lease_in", number=number)
+        uniform = world.tail_luck.draw("lease_in", world.tail_number[tail], number)
         found = uniform < chance
         world.log.fact(_SOUGHT, now, tail, detail="found" if found else "not found")
         if found:

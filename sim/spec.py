@@ -1,7 +1,7 @@
 """A fleet made ready to run: tables turned into small indexed values, once for each study.
 
-Everything here is read-only while a run goes on. Modules of a type are numbered in the order of ``module_types``, ratings
-in the order of ``ratings``; a module number is called a *slot*.
+Everything here is read-only while a run goes on. Modules of a type are numbered in the order of ``module_types``,
+ratings in the order of ``ratings``; a module number is called a *slot*.
 """
 
 from __future__ import annotations

@@ -27,6 +27,7 @@ class Names(NamedTuple):
 
     modules: np.ndarray[tuple[int], np.dtype[np.uint64]]
     engines: np.ndarray[tuple[int], np.dtype[np.uint64]]
+    tails: np.ndarray[tuple[int], np.dtype[np.uint64]]
     module_index: dict[str, int]
     engine_index: dict[str, int]
     epochs: dict[str, tuple[Epoch, ...]]
@@ -55,6 +56,7 @@ def names(setup: Setup) -> Names:
     return Names(
         modules=np.array([entity("module", m.module_serial) for m in fleet.modules], dtype=np.uint64),
         engines=np.array([entity("engine", e.engine_serial) for e in fleet.engines], dtype=np.uint64),
+        tails=np.array([entity("lease", a.tail) for a in fleet.aircraft], dtype=np.uint64),
         module_index={m.module_serial: i for i, m in enumerate(fleet.modules)},
         engine_index={e.engine_serial: i for i, e in enumerate(fleet.engines)},
         epochs=epochs,
@@ -82,12 +84,12 @@ def _epochs(rows: tuple[PartLimit, ...], ratings: tuple[str, ...]) -> tuple[Epoc
     return tuple(result)
 
 
-def luck(setup: Setup, known: Names, *, seed: int, run: int) -> tuple[Luck, Luck]:
-    """Return the draws of modules and of engines for one run."""
-    del setup
+def luck(known: Names, *, seed: int, run: int) -> tuple[Luck, Luck, Luck]:
+    """Return the draws of modules, of engines and of tails (requests for a lease-in) for one run."""
     return (
         Luck(known.modules, MODULE_PURPOSES, seed=seed, run=run),
         Luck(known.engines, ENGINE_PURPOSES, seed=seed, run=run),
+        Luck(known.tails, ("lease_in",), seed=seed, run=run),
     )
 
 

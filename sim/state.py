@@ -102,12 +102,14 @@ class PartState:
         """Return cycles left at a rating under an epoch's limits, rounded down; negative once passed, 0 if unknown."""
         if not self.known or not at.limits[rating]:
             return 0
-        counts = self.counts(run)
         if self.spec.most_restrictive:
+            counts = self.counts(run)
             flown = [at.limits[i] for i, count in enumerate(counts) if count]
             return min([at.limits[rating], *flown]) - sum(counts)
-        used = sum(count * unit for count, unit in zip(counts, at.units, strict=True))
-        return (at.multiple - used) // at.units[rating]
+        left = at.multiple
+        for before, now, mark, unit in zip(self.flown, run, self.mark, at.units):  # noqa: B905 -- hot, equal by make
+            left -= (before + now - mark) * unit
+        return left // at.units[rating]
 
     def fraction_left(self, run: list[int], rating: int, day: float) -> float:
         """Return the share of life left at a rating, 0 to 1."""

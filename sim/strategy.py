@@ -26,13 +26,13 @@ def decide(view: View, strategy: Strategy, catalogue: Catalogue, *, rate_frac: f
     ``rate_frac``: what a year of an idle engine costs as a share of its price (discount plus keeping).
     """
     goal, stub = strategy.build_goal_cycles, strategy.stub_cycles
+    swaps = _swaps(view, strategy) if strategy.way_out != "whole_engine" else ()
+    if swaps and strategy.way_out == "exchange":
+        return _exchange(view, swaps, catalogue, rate_frac, ())
     whole = scope_of(view, goal_cycles=goal, stub_cycles=stub, only_cause=False, catalogue=catalogue)
     if strategy.way_out == "whole_engine":
         return Decision("whole_engine", _shop(view, whole, catalogue, rate_frac), whole, (), ())
-    swaps = _swaps(view, strategy)
     if strategy.way_out == "exchange":
-        if swaps:
-            return _exchange(view, swaps, catalogue, rate_frac, ())
         if _worth_waiting(view, strategy):
             return Decision("wait", 0, whole, (), ())
         return Decision("whole_engine", _shop(view, whole, catalogue, rate_frac), whole, (), ())

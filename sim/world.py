@@ -50,7 +50,7 @@ class World:
         self.season = setup.season
         self.end_days = setup.horizon_days
         self.seed, self.run = seed, run
-        self.module_luck, self.engine_luck = start.luck(setup, known, seed=seed, run=run)
+        self.module_luck, self.engine_luck, self.tail_luck = start.luck(known, seed=seed, run=run)
         self.catalogue = setup.catalogue
         self.item: Callable[..., int] = self.catalogue.number
         self.engine_rows = {t.engine_type: t for t in setup.fleet.engine_types}
@@ -66,6 +66,7 @@ class World:
             name: [capacity(s.modules_per_month, s.module_bays) for s in shops] for name, shops in setup.shops.items()
         }
         self.teams = [(team, Bays(team.jobs_at_a_time)) for team in setup.teams]
+        self.tail_number = {row.tail: i for i, row in enumerate(setup.fleet.aircraft)}
         self.aircraft: list[AircraftProcess] = []
         self.under_way: dict[str, tuple[float, Callable[[], None]]] = {}
         self.waiting_modules: list[tuple[float, EngineState, Removal, AircraftProcess]] = []

@@ -80,7 +80,7 @@ def _only(tables: dict[str, list[Row]], kinds: set[str]) -> dict[str, list[Row]]
 
 
 def _entry(past: Past, tail: str) -> str:
-    return next(row["entry_date"] for row in past.delivered["aircraft"] if row["tail"] == tail)
+    return next(str(row["entry_date"]) for row in past.delivered["aircraft"] if row["tail"] == tail)
 
 
 def _parts(past: Past, lived: Histories) -> list[Row]:

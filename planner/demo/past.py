@@ -179,7 +179,8 @@ def _fill_the_gaps(world: World) -> None:
 
 
 def _best_spare(world: World, kind: str, rating: int) -> EngineState | None:
-    """Return a spare from the shelf, else the engine whose visit has begun, with its work done; the best margin wins."""
+    """Return a spare from the shelf, else the engine whose visit has begun, with its work done; the best margin
+    wins."""
     pool = world.engine_pools[kind].engines
     begun = [e for e in world.all_engines if e.spec.engine_type == kind and e.serial in world.under_way]
     begun = [e for e in begun if world.under_way[e.serial][0] <= world.env.now]
