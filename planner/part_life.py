@@ -12,11 +12,13 @@ from planner.records import Records
 
 
 class PartLife(NamedTuple):
-    """``why`` says in words why a life is unknown, and is blank where it is known."""
+    """``why`` says in words why a life is unknown, and is blank where it is known; ``short`` that it is for a history
+    that falls short."""
 
     flown: tuple[tuple[str, int], ...]
     known: bool
     why: str
+    short: bool = False
 
 
 def lowest_ratings(records: Records) -> dict[str, str]:
@@ -74,5 +76,5 @@ def flown_by_part(records: Records) -> list[PartLife]:
             why = "the day of manufacture is blank and its limit counts days"
         elif not substantiated:
             why = "status is not substantiated"
-        lives.append(PartLife(tuple(flown.items()), not why, why))
+        lives.append(PartLife(tuple(flown.items()), not why, why, why.startswith("history")))
     return lives

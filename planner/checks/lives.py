@@ -86,8 +86,10 @@ def parts_with_a_limit_in_hours_or_days_have_them_counted(facts: Facts) -> Itera
 
 
 def life_of_every_part_is_known(facts: Facts) -> Iterator[Fault]:
+    faulty = facts.records["parts"].faulty
     for part in facts.parts:
-        if not part.life.known:
+        # what the history lacks and what could not be read is told by other rules
+        if not part.life.known and not part.life.short and (part.row, "cycles_since_new") not in faulty:
             message = f"{part.serial}: {part.life.why}; its life counts as zero"
             yield Fault("parts", part.row, "cycles_since_new", part.life.why, "life that records prove", message)
 
@@ -132,23 +134,6 @@ def announced_cuts_leave_life(facts: Facts) -> Iterator[Fault]:
             )
             expected = f"life under the limit of {row.limit_cycles:,}"
             yield Fault("parts", part.row, "cycles_since_new", f"{part.cycles:,}", expected, message)
-
-
-def engines_flew_at_one_rating(facts: Facts) -> Iterator[Fault]:
-    told: set[str] = set()
-    for part in facts.parts:
-        flown = [(rating, cycles) for rating, cycles in part.life.flown if cycles]
-        module = facts.modules.get(part.module_serial)
-        if len(flown) < 2 or not part.life.known or module is None or not module.engine_serial:
-            continue
-        if module.engine_serial not in told:
-            told.add(module.engine_serial)
-            counts = ", ".join(f"{cycles:,} at {rating}" for rating, cycles in flown)
-            message = (
-                f"{part.serial} in engine {module.engine_serial} flew {counts}; each counts against "
-                "the limit of its rating"
-            )
-            yield Fault("parts", part.row, "part_serial", counts, "one rating, or history that proves them", message)
 
 
 def limits_do_not_rise_with_thrust(facts: Facts) -> Iterator[Fault]:
@@ -250,7 +235,6 @@ LIFE_RULES: tuple[Rule, ...] = (
     warns(life_of_every_part_is_known),
     warns(limits_are_published_for_every_rating_flown),
     warns(announced_cuts_leave_life),
-    warns(engines_flew_at_one_rating),
     warns(limits_do_not_rise_with_thrust),
     stops(serial_ranges_run_upwards),
     stops(serials_can_be_held_against_ranges),

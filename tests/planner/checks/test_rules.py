@@ -225,7 +225,6 @@ BAD: dict[str, Fault] = {
     "life_of_every_part_is_known": Fault(put("parts", 0, status_substantiated="no"), "parts", 2, "cycles_since_new"),
     "limits_are_published_for_every_rating_flown": Fault(drop("part_limits", 1), "parts", 6, "part_number"),
     "announced_cuts_leave_life": Fault(add("part_limits", CUT), "parts", 3, "cycles_since_new"),
-    "engines_flew_at_one_rating": Fault(put("part_history", 0, rating="low"), "parts", 2, "part_serial"),
     "limits_do_not_rise_with_thrust": Fault(
         put("part_limits", 0, limit_cycles="25001"), "part_limits", 2, "limit_cycles"
     ),
