@@ -28,18 +28,19 @@ _PART_USD_PER_CYCLE = {"N": 25.0, "W": 90.0}
 
 def leased(tails: list[Tail]) -> list[Tail]:
     """Return every other tail: about half of the fleet is leased."""
-    return [tail for number, tail in enumerate(tails) if number % 2 == 0]
+    return [tail for number, tail in enumerate(tails) if number % 2 == 0 and tail.entry <= AS_OF]
 
 
-def lease_tables(tails: list[Tail], seed: int) -> dict[str, list[Row]]:
-    """Return leases, terms, settlements and accounts."""
+def lease_tables(tails: list[Tail], seed: int, *, plain: bool) -> dict[str, list[Row]]:
+    """Return leases, terms, settlements and accounts; in a plain fleet no lease returns within the first two years."""
+    first = dt.date(2028, 9, 1) if plain else _FIRST
     leases, accounts = [], []
     chosen = leased(tails)
     for number, tail in enumerate(chosen):
         lessor = number % 4
         share = (number + 0.5) / len(chosen)
         jitter = (uniform(seed, "return", tail.tail) - 0.5) / len(chosen)
-        day = _FIRST + dt.timedelta(days=round((_LAST - _FIRST).days * min(1.0, max(0.0, share + jitter))))
+        day = first + dt.timedelta(days=round((_LAST - first).days * min(1.0, max(0.0, share + jitter))))
         name = f"L-{tail.tail}"
         follow = uniform(seed, "after", tail.tail)
         leases.append(

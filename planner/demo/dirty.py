@@ -96,6 +96,8 @@ def _small(clean: Tables) -> Tables:
             continue
         kept = [dict(r) for r in rows if r.get("engine_type") in kinds or "engine_type" not in r]
         tables[name] = [r for r in kept if keep[name](r)] if name in keep else kept
+    numbers = {r["part_number"] for r in tables["part_types"]}
+    tables["part_limits"] = [r for r in tables["part_limits"] if r["part_number"] in numbers]
     return tables
 
 

@@ -49,7 +49,9 @@ class _Walk:
         self._hours: dict[str, float] = {}
         entry = {a.tail: a.entry_day or 0.0 for a in fleet.aircraft}
         self._installs: list[Row] = [
-            self._link(e.engine_serial, e.tail, entry[e.tail], position=e.position) for e in fleet.engines if e.tail
+            self._link(e.engine_serial, e.tail, entry[e.tail], position=e.position)
+            for e in fleet.engines
+            if e.tail and entry[e.tail] <= past.world.env.now
         ]
         self._open = {row["serial"]: row for row in self._installs}
         self._removals: list[Row] = []

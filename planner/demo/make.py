@@ -9,7 +9,7 @@ from planner.demo.contracts import delivery_rows, lease_tables, owners
 from planner.demo.dirty import dirty_tables
 from planner.demo.history import Histories, histories
 from planner.demo.past import Past, live, part_serial
-from planner.demo.planted import plant
+from planner.demo.planted import plant, smooth
 from planner.demo.state_tables import aircraft_rows, engine_rows, margin_rows, module_rows, places
 from planner.demo.sub_fleets import SUB_FLEETS, tails
 from planner.demo.type_tables import Row, settings, type_tables
@@ -60,11 +60,13 @@ def fleet_tables(*, aircraft: int, seed: int, plain: bool) -> dict[str, list[Row
             for tail in past.changed_rating
             for day, rating in ((_entry(past, tail), "high"), ("2022-04-01", "mid"))
         ],
-        **lease_tables(flying, seed),
+        **lease_tables(flying, seed, plain=plain),
     }
     _own(tables, owners(flying))
     tables["lease_delivery"] = delivery_rows(tables["modules"], tables["engines"], tables["leases"])
-    if not plain:
+    if plain:
+        smooth(tables)
+    else:
         plant(tables)
     return tables
 

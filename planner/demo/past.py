@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import datetime as dt
 import tempfile
+from dataclasses import replace
 from pathlib import Path
 from typing import Any, NamedTuple
 
@@ -16,7 +17,7 @@ from planner.demo.sub_fleets import AS_OF, Tail
 from planner.demo.type_tables import Row
 from planner.demo.types import DEMO_TYPES
 from planner.demo.write import write_tables
-from sim.setting_out import set_out
+from sim.setting_out import begun_scope, set_out
 from sim.spec import setup
 from sim.start import names
 from sim.state import EngineState, ModuleState, PartState
@@ -188,10 +189,23 @@ def _best_spare(world: World, kind: str, rating: int) -> EngineState | None:
         engine = max(pool, key=lambda e: (e.margin_degC(rating), e.serial))
         pool.remove(engine)
         return engine
-    if not begun:
+    if begun:
+        engine = min(begun, key=lambda e: (world.under_way[e.serial][0], e.serial))
+        world.under_way.pop(engine.serial)[1]()
+        return engine
+    return _hurried(world, kind)
+
+
+def _hurried(world: World, kind: str) -> EngineState | None:
+    """Return an engine that still queues, given a core visit in a hurry: the past ends with no tail on the ground."""
+    hung = {e.serial for a in world.aircraft for e in a.engines if e is not None}
+    queued = [e for e in world.all_engines if e.spec.engine_type == kind and e.serial not in hung and e.modules]
+    if not queued:
         return None
-    engine = min(begun, key=lambda e: (world.under_way[e.serial][0], e.serial))
-    world.under_way.pop(engine.serial)[1]()
+    engine = min(queued, key=lambda e: e.serial)
+    world.under_way.pop(engine.serial, None)
+    row = next(e for e in world.setup.fleet.engines if e.engine_serial == engine.serial)
+    world.bench.work_on(engine, begun_scope(world, replace(row, visit="core"), engine), day=world.env.now)
     return engine
 
 

@@ -14,6 +14,100 @@ def plant(tables: Tables) -> None:
     _leased_in_spare(tables)
     _other_owner(tables)
     _directive(tables)
+    _weak_etops_pair(tables)
+    _little_left_on_a_leased_tail(tables)
+
+
+def smooth(tables: Tables) -> None:
+    """Make a plain fleet plain: one standard of each module, and no tail with two weak engines."""
+    tables.pop("standards", None)
+    for row in tables["modules"]:
+        row["standard"] = ""
+    weak: dict[str, int] = {}
+    for engine in tables["engines"]:
+        if engine["place"] == "wing" and margin(tables, engine["engine_serial"]) < _WEAK_MARGIN + 4:
+            weak[engine["tail"]] = weak.get(engine["tail"], 0) + 1
+            set_margin(tables, engine["engine_serial"], _WEAK_MARGIN + 10.0)
+
+
+_WEAK_MARGIN = 12.0  # the setting's default, below which an engine counts as weak
+
+
+def _rating(tables: Tables, engine: Row) -> str:
+    return next(str(a["rating"]) for a in tables["aircraft"] if a["tail"] == engine["tail"])
+
+
+def margin(tables: Tables, serial: str) -> float:
+    """Return the hot-day margin of an engine on the wing, from its modules."""
+    engine = next(e for e in tables["engines"] if e["engine_serial"] == serial)
+    rating = _rating(tables, engine)
+    new = next(
+        float(r["new_margin_degC"])
+        for r in tables["ratings"]
+        if r["engine_type"] == engine["engine_type"] and r["rating"] == rating
+    )
+    return new - sum(float(m["margin_lost_degC"]) for m in tables["modules"] if m.get("engine_serial") == serial)
+
+
+def set_margin(tables: Tables, serial: str, wanted_degC: float) -> None:
+    """Move an engine's margin to a value: its HPT has lost more (or less), and its readings say so."""
+    move = margin(tables, serial) - wanted_degC
+    for module in tables["modules"]:
+        if module.get("engine_serial") == serial and module["module"] == "HPT":
+            module["margin_lost_degC"] = round(float(module["margin_lost_degC"]) + move, 3)
+    for reading in tables["margins"]:
+        if reading["engine_serial"] == serial:
+            reading["margin_degC"] = round(float(reading["margin_degC"]) - move, 1)
+
+
+def _weak_etops_pair(tables: Tables) -> None:
+    """An ETOPS tail with two weak engines: a plan by margin alone would send both away together."""
+    tails = [row["tail"] for row in tables["aircraft"] if row.get("etops_minutes") and row["sub_fleet"] == "NC"]
+    if not tails:
+        return
+    for number, engine in enumerate(e for e in tables["engines"] if e.get("tail") == tails[-1]):
+        set_margin(tables, engine["engine_serial"], 8.5 + 0.4 * number)
+
+
+def _little_left_on_a_leased_tail(tables: Tables) -> None:
+    """An engine with 120 cycles left on one part and little margin on a leased tail: the part was bought used, and its
+    life with the operator before stands in its history."""
+    leased = {row["tail"] for row in tables["leases"]}
+    changed = {row["tail"] for row in tables["rating_changes"]}
+    engines = [e for e in tables["engines"] if e.get("tail") in leased - changed and e["engine_type"] == "N"]
+    for engine in engines:
+        serial = engine["engine_serial"]
+        rating = _rating(tables, engine)
+        hpt = next(
+            m["module_serial"] for m in tables["modules"] if m.get("engine_serial") == serial and m["module"] == "HPT"
+        )
+        part = next(p for p in tables["parts"] if p["module_serial"] == hpt and p["part_number"] == "NHT-02")
+        stretches = [h for h in tables["part_history"] if h["part_serial"] == part["part_serial"]]
+        if not stretches or {h["rating"] for h in stretches} != {rating}:
+            continue
+        limit = next(
+            int(x["limit_cycles"])
+            for x in tables["part_limits"]
+            if x["part_number"] == "NHT-02" and x["rating"] == rating
+        )
+        more = limit - 120 - int(part["cycles_since_new"])
+        first = min(str(h["from_date"]) for h in stretches)
+        hours = round(more * 1.6, 2)
+        tables["part_history"].append(
+            {
+                "part_serial": part["part_serial"],
+                "rating": rating,
+                "from_date": f"{int(first[:4]) - 8}{first[4:]}",
+                "to_date": first,
+                "cycles": more,
+                "hours": hours,
+                "source": "record of the operator before",
+            }
+        )
+        part["cycles_since_new"] = limit - 120
+        part["hours_since_new"] = round(float(part["hours_since_new"]) + hours, 2)
+        set_margin(tables, serial, 8.0)
+        return
 
 
 def _future_aircraft_changes(tables: Tables) -> None:
@@ -25,7 +119,8 @@ def _future_aircraft_changes(tables: Tables) -> None:
 
 def _rating_that_expires(tables: Tables) -> None:
     """A bought rating ends on 2027-06-30."""
-    high = [row for row in tables["aircraft"] if row["sub_fleet"] == "NA" and row["rating"] == "high"]
+    flying = [row for row in tables["aircraft"] if not row.get("entry_date")]
+    high = [row for row in flying if row["sub_fleet"] == "NA" and row["rating"] == "high"]
     if high:
         high[-1] |= {"rating_until": "2027-06-30", "rating_after": "mid"}
 

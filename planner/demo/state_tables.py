@@ -38,7 +38,9 @@ def aircraft_rows(past: Past, tails: list[Tail], histories: dict[str, tuple[int,
     for tail in tails:
         cycles, hours = histories.get(tail.tail, (0, 0.0))
         row = dict(delivered[tail.tail])
-        row |= {"rating": tail.rating, "rating_until": "", "rating_after": "", "entry_date": ""}
+        row |= {"rating": tail.rating, "rating_until": "", "rating_after": ""}
+        if tail.entry <= AS_OF:
+            row["entry_date"] = ""
         row |= {"cycles_since_new": cycles, "hours_since_new": round(hours, 2)}
         rows.append(row)
     return rows

@@ -10,6 +10,7 @@ from sim.errors import RequestError
 
 AS_OF = dt.date(2026, 7, 1)
 MOST_AIRCRAFT = 5_000
+JOINING_FROM = 20  # from this size on two aircraft join in 2028, on top of those that fly today
 
 
 class SubFleet(NamedTuple):
@@ -56,6 +57,11 @@ def tails(aircraft: int, seed: int) -> list[Tail]:
             age += between(-0.4, 0.4, seed, "age", sub.code, number)
             entry = AS_OF - dt.timedelta(days=round(365.25 * max(2.5, age)))
             result.append(Tail(f"{sub.code}-{number + 1:02d}", sub, _rating(sub, number), entry))
+    if aircraft >= JOINING_FROM:
+        joins = SUB_FLEETS[0]
+        last = sum(t.sub_fleet is joins for t in result)
+        for number, entry in enumerate((dt.date(2028, 3, 1), dt.date(2028, 6, 1))):
+            result.append(Tail(f"{joins.code}-{last + number + 1:02d}", joins, "high", entry))
     return result
 
 
