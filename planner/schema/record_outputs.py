@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from planner.schema.column import Table, choice, date, integer, number, serial, text
+from planner.schema.column import Table, choice, date, flag, integer, number, serial, text
 
 CHANGE_KINDS = ("swap", "visit", "use", "correction", "limit", "price", "new", "gone", "other")
 
@@ -51,6 +51,7 @@ _TABLES: tuple[Table, ...] = (
             integer("limit_after_cycles", "Limit after", "limit with it"),
             integer("cycles_left_before", "Left before", "today, without the directive"),
             integer("cycles_left_after", "Left after", "today, with it"),
+            flag("over_on_day_one", "Over on its first day", "yes: past the new limit when it comes into force"),
             date("date_reached", "Date reached", "day on which the part must be off"),
             number("value_lost_usd", "Value lost", "of the life taken away, at the part's price"),
         ),
