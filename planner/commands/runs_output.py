@@ -15,6 +15,8 @@ from planner.execute import where_from
 from planner.home import home
 from planner.schema.registry import OUTPUTS
 
+MOST_LINES = 40
+
 
 def print_list(*, as_json: bool) -> None:
     """Print the saved studies, newest first."""
@@ -22,7 +24,7 @@ def print_list(*, as_json: bool) -> None:
     if as_json:
         print_json(envelope("runs", {"studies": lines}, inputs=""))
     elif lines:
-        click.echo(_table("studies", [line._asdict() for line in lines]))
+        click.echo(_table("studies", [{**line._asdict(), "inputs": line.inputs[:12]} for line in lines]))
     else:
         click.echo(f"no study is saved in {home()}")
 
@@ -39,7 +41,7 @@ def print_study(name: str, *, again: bool, workers: int | None, as_json: bool) -
         inputs, warnings = manifest.inputs, [*manifest.warnings, *([found.note] if found and found.note else [])]
         print_json(envelope("runs", result, inputs=inputs, warnings=warnings, seed=manifest.seed))
     else:
-        facts = {**questions.line_of(manifest)._asdict(), **manifest.settings}
+        facts = {**manifest.settings, **questions.line_of(manifest)._asdict()}
         click.echo("\n".join(f"{name}: {value}" for name, value in facts.items()))
         for warning in manifest.warnings:
             click.echo(f"Assumed: {warning}")
@@ -83,9 +85,14 @@ def _in_words(found: questions.Again) -> str:
 
 
 def _summary(title: str, value: object) -> str:
-    if isinstance(value, Sequence) and value and isinstance(value[0], Mapping):
-        return _table(title, value)
-    return str(value)
+    """Return a part of an answer: sentences and short tables as they are, long tables by their size."""
+    if not isinstance(value, Sequence) or isinstance(value, str):
+        return str(value)
+    if not value or not isinstance(value[0], Mapping):
+        return "\n".join(str(item) for item in value)
+    if len(value) > MOST_LINES:
+        return f"{len(value)} rows: see them with --json"
+    return _table(title, value)
 
 
 def _table(name: str, rows: Sequence[Mapping[str, Any]]) -> str:
