@@ -89,6 +89,34 @@ class Usage(NamedTuple):
         return self.use.day(self.use.cycles(self.since) + cycles)
 
 
+class Months:
+    """Months given by their edges (days), and what each tail flies by each edge, reckoned once."""
+
+    def __init__(self, edges: Floats) -> None:
+        self.edges = edges
+        self._flown: dict[tuple[int, float], tuple[PlannedUse, Floats, Floats]] = {}
+
+    def __len__(self) -> int:
+        return int(self.edges.size - 1)
+
+    def flown(self, use: Usage) -> tuple[Floats, Floats]:
+        """Return cycles and hours flown by each edge, each of shape (months + 1,)."""
+        key = (id(use.use), use.since)
+        if key not in self._flown:
+            cycles = np.array([use.cycles(day) for day in self.edges.tolist()])
+            hours = np.array([use.hours(day) for day in self.edges.tolist()])
+            # the use is kept with its figures, so that no other one can come to stand at its address
+            self._flown[key] = (use.use, cycles, hours)
+        return self._flown[key][1:]
+
+    def flown_until(self, use: Usage, stop: float) -> tuple[Floats, Floats]:
+        """Return the same, nothing being flown after day ``stop``."""
+        cycles, hours = self.flown(use)
+        if stop >= float(self.edges[-1]):
+            return cycles, hours
+        return np.minimum(cycles, use.cycles(stop)), np.minimum(hours, use.hours(stop))
+
+
 class FirstRemoval(NamedTuple):
     """The law of an engine's first removal: chance in each month by (cause, slot), shape (months, causes), and
     the chance
@@ -219,34 +247,25 @@ def gathered(one: Chance, cycles: Floats, hours: Floats) -> Floats:
     return np.asarray(((one.age + more) / one.scale) ** one.shape - (one.age / one.scale) ** one.shape)
 
 
-def first_removal(one: Ahead, edges: Floats) -> FirstRemoval:
-    """Return the law of the first removal over months given by their edges (days), shape (months + 1,)."""
-    cycles = np.array([one.use.cycles(day) for day in edges])
-    hours = np.array([one.use.hours(day) for day in edges])
-    stop = one.planned_day
-    last = min(max(stop, float(edges[0])), float(edges[-1]))
-    # the month in which the planned cause falls is cut there: hazards gather up to that day only
-    cut = np.minimum(edges, last)
-    if stop < edges[-1]:
-        cycles = np.minimum(cycles, one.use.cycles(last))
-        hours = np.minimum(hours, one.use.hours(last))
+def first_removal(one: Ahead, months: Months) -> FirstRemoval:
+    """Return the law of the first removal over some months."""
+    edges, stop = months.edges, one.planned_day
+    # in the month in which the planned cause falls, hazards gather up to that day only
+    cycles, hours = months.flown_until(one.use, stop)
     rows = [gathered(chance, cycles, hours) for chance in one.chances]
     hazards = np.array(rows) if rows else np.zeros((1, edges.size))
     alive = np.exp(-hazards.sum(axis=0))
-    fallen = alive[:-1] - alive[1:]
     steps = np.diff(hazards, axis=1)
     total = steps.sum(axis=0)
     share = np.divide(steps, total, out=np.zeros_like(steps), where=total > 0.0)
     names = [(chance.cause, chance.slot) for chance in one.chances]
-    by_month = (share * fallen)[: len(rows)].T if rows else np.zeros((edges.size - 1, 0))
+    by_month = (share * (alive[:-1] - alive[1:]))[: len(rows)].T
     if one.planned and stop < edges[-1]:
-        month = min(edges.size - 2, max(0, int(np.searchsorted(edges, stop, side="right")) - 1))
+        column = np.zeros((len(months), 1))
+        column[max(0, int(np.searchsorted(edges, stop, side="right")) - 1), 0] = alive[-1]
         names.append((one.planned[0].cause, one.planned[0].slot))
-        column = np.zeros((edges.size - 1, 1))
-        column[month, 0] = alive[-1]
         by_month = np.hstack([by_month, column])
-    still = np.where(cut[1:] < edges[1:], 0.0, alive[1:])
-    return FirstRemoval(tuple(names), by_month, np.where(edges[1:] >= stop, 0.0, still))
+    return FirstRemoval(tuple(names), by_month, np.where(edges[1:] >= stop, 0.0, alive[1:]))
 
 
 def quantile_days(

@@ -18,7 +18,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from planner.causes_ahead import ahead, month_edges
+from planner.causes_ahead import Months, ahead, month_edges
 from planner.next_runs import (
     ShopLoad,
     exchange_days,
@@ -30,7 +30,6 @@ from planner.next_runs import (
 )
 from planner.picture import Picture, picture
 from planner.renewals import Position, Renewing, overlap, removal_rates
-from planner.scenario import stock_held
 from sim.errors import RequestError
 from sim.fleet import Fleet
 from sim.queues import erlang_loss
@@ -67,6 +66,7 @@ class Demand(NamedTuple):
     away_now: Floats
     taken: NDArray[np.int64]
     worst_slot: int
+    feasible: tuple[float, float]
     exchanged_frac: float
 
     @property
@@ -104,8 +104,10 @@ def _of_type(view: Picture, kind: TypeSpec, strategy: str, edges: Floats, *, exc
     pool = view.world.engine_pools[name].engines
     spares = [ahead(view, one, typical[1], dated=False) for one in pool if one.modules] if typical else []
 
+    months = Months(edges)
+
     def rates_at(share: float) -> Floats:
-        return removal_rates(positions, spares, edges, slots=slots, renewing=renewing, exchanged_frac=share)
+        return removal_rates(positions, spares, months, slots=slots, renewing=renewing, exchanged_frac=share)
 
     bare = Demand(
         engine_type=name,
@@ -120,10 +122,11 @@ def _of_type(view: Picture, kind: TypeSpec, strategy: str, edges: Floats, *, exc
         away_now=_away_now(view, name, edges),
         taken=_taken(view, name, edges),
         worst_slot=worst,
+        feasible=_feasible(view, positions, name) if exchanges else (0.0, 0.0),
         exchanged_frac=0.0,
     )
     found = _with_days(view, kind, bare, typical, exchanges=exchanges)
-    share = served_frac(found, kind, stock_held(view.fleet)) if exchanges else 0.0
+    share = served_frac(found, kind, usable_modules(view, kind)) if exchanges else 0.0
     if share > 0.0:
         found = found._replace(rates=rates_at(share), exchanged_frac=share)
         found = _with_days(view, kind, found, typical, exchanges=exchanges)
@@ -138,20 +141,38 @@ def _positions(view: Picture, kind: TypeSpec, *, exchanges: bool) -> tuple[Posit
         for number, engine in enumerate(process.engines, start=1):
             if engine is not None:
                 one = ahead(view, engine, tail)
-                whole = next_run(view, one, only_cause=False)
-                other = next_run(view, one, only_cause=True) if exchanges else None
+                whole = next_run(view, one, exchanged=False)
+                other = next_run(view, one, exchanged=True) if exchanges else None
                 found.append(Position(tail, number, engine.serial, one, whole, other))
     return tuple(found)
 
 
-def served_frac(demand: Demand, kind: TypeSpec, held: dict[tuple[str, str], int]) -> float:
+def usable_modules(view: Picture, kind: TypeSpec) -> dict[str, int]:
+    """Return by module how many owned ones outside engines may mate with at least half of the type's flying engines."""
+    flying = [
+        (engine, process.flying)
+        for process in view.tails.values()
+        if process.spec is kind
+        for engine in process.engines
+        if engine is not None and engine.modules
+    ]
+    found = {module.module: 0 for module in kind.modules}
+    for row in view.fleet.modules:
+        if row.engine_type == kind.engine_type and not row.engine_serial:
+            state = view.modules[row.module_serial]
+            fits = sum(view.world.matching.may_mate(engine, state, how) for engine, how in flying)
+            found[row.module] += fits * 2 >= len(flying)
+    return found
+
+
+def served_frac(demand: Demand, kind: TypeSpec, held: dict[str, int]) -> float:
     """Return the share of removals that find the module they ask for on a shelf of so many (Erlang's loss)."""
     asked = asked_per_day(demand)
     served = 0.0
     for slot, module in enumerate(kind.modules):
         if asked[slot] > 0.0 and not math.isnan(demand.exchange_days[slot]):
-            stock = held.get((demand.engine_type, module.module), 0)
-            served += asked[slot] * (1.0 - erlang_loss(stock, float(asked[slot]) * float(demand.back_days[slot])))
+            lost = erlang_loss(held.get(module.module, 0), float(asked[slot]) * float(demand.back_days[slot]))
+            served += asked[slot] * (1.0 - lost)
     total = float(demand.per_day().sum())
     return served / total if total > 0.0 else 0.0
 
@@ -166,18 +187,30 @@ def asked_per_day(demand: Demand) -> Floats:
     return asked
 
 
+def _feasible(view: Picture, positions: tuple[Position, ...], kind: str) -> tuple[float, float]:
+    """Return the share of planned and of chance removals after which an exchange carries the engine past the stub."""
+    stub = view.strategy(kind).stub_cycles
+    after = [one.exchanged.after for one in positions if one.exchanged is not None]
+    planned = [not one.planned or one.planned[0].cycles >= stub for one in after]
+    chance = [not one.ahead.planned or one.ahead.planned[0].cycles >= stub for one in positions]
+    return float(np.mean(planned)) if planned else 0.0, float(np.mean(chance)) if chance else 0.0
+
+
 def _with_days(view: Picture, kind: TypeSpec, demand: Demand, typical: Typical | None, *, exchanges: bool) -> Demand:
     """Return the demand with the days away by slot: whole, exchanged, and a module's way back to the shelf."""
     months = float(demand.edges[-1]) / 365.25 * _MONTHS_A_YEAR
     shops = view.setup.shops[kind.engine_type]
     inducted = float(demand.rates.sum()) * (1.0 - demand.exchanged_frac) / months
-    load = shop_load(shops, inducted, horizon_days=float(demand.edges[-1]))
+    # planned removals repeat with the runs and hardly add to what varies in the long run; chance ones are Poisson
+    rates = demand.per_day().sum(axis=0)
+    spread = float(rates[1] / rates.sum()) if rates.sum() > 0.0 else 1.0
+    load = shop_load(shops, inducted, horizon_days=float(demand.edges[-1]), spread=spread)
     slots = len(kind.modules)
     whole, exchanged = np.zeros(slots + 1), np.full(slots + 1, math.nan)
     for slot in range(slots + 1 if typical else 0):
         assert typical is not None
         cause, of_slot = ("margin", -1) if slot == slots else ("distress", slot)
-        scope = expected_scope(view, *typical, cause=cause, slot=of_slot, only_cause=False)
+        scope = expected_scope(view, *typical, cause=cause, slot=of_slot)
         whole[slot] = load.wait_days + visit_days(shops, scope.visit)
         if exchanges and slot < slots:
             exchanged[slot] = exchange_days(view, kind, slot, shops, wait_days=load.wait_days)
@@ -205,7 +238,7 @@ def _renewing(view: Picture, kind: TypeSpec, typical: Typical | None) -> frozens
         return frozenset()
     found = []
     for slot in range(len(kind.modules)):
-        scope = expected_scope(view, *typical, cause="unscheduled", slot=slot, only_cause=False)
+        scope = expected_scope(view, *typical, cause="unscheduled", slot=slot)
         found += [slot] if scope.visit in ("core", "overhaul") else []
     return frozenset(found)
 
@@ -233,10 +266,15 @@ def _taken(view: Picture, kind: str, edges: Floats) -> NDArray[np.int64]:
     """Return by month how many spares fill positions for good: positions that operate less engines that came with
     them.
 
-    A leased-in engine that goes back leaves its position to a spare; an own engine whose tail exits becomes one.
+    A leased-in engine that goes back leaves its position to a spare; one that lies idle is a spare until then; an own
+    engine whose tail exits becomes one.
     """
     middle = (edges[:-1] + edges[1:]) / 2.0
     taken = np.zeros(middle.size, dtype=np.int64)
+    for row in view.fleet.engines:
+        if row.engine_type == kind and row.place == "leased_in" and not row.tail:
+            until = math.inf if row.lease_in_until_day is None else row.lease_in_until_day
+            taken -= (middle < until).astype(np.int64)
     for tail, process in view.tails.items():
         if process.row.engine_type != kind:
             continue

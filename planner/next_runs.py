@@ -16,7 +16,7 @@ from planner.causes_ahead import Ahead, ahead
 from planner.picture import Picture, flown_to
 from sim.queues import erlang_loss, slot_wait_days
 from sim.removal import Removal
-from sim.spec import ShopSpec, TypeSpec
+from sim.spec import NONE, RESTORATION, ShopSpec, TypeSpec
 from sim.state import EngineState
 from sim.view import Scope
 from sim.workscope import scope_of
@@ -41,26 +41,51 @@ class ShopLoad(NamedTuple):
     load_frac: float
 
 
-def next_run(view: Picture, one: Ahead, *, only_cause: bool) -> Run | None:
-    """Return the visit that the first planned cause asks for, and the run after it; None without any cause.
+def next_run(view: Picture, one: Ahead, *, exchanged: bool) -> Run | None:
+    """Return the visit that the first planned cause asks for, and the run after it; None without such a cause.
 
-    ``only_cause``: nothing but the cause is repaired, as after an exchange; else the engine is built for the goal.
+    ``exchanged``: the module that limits is exchanged for a restored one; else the engine goes whole, built for
+    the goal.
     """
-    if not one.planned or not view.engines[one.engine_serial].modules:
-        return None
     first = next((p for p in one.planned if p.cause not in ("lease_end", "return", "exit")), None)
-    if first is None:
+    if first is None or not view.engines[one.engine_serial].modules:
         return None
     flown = flown_to(view, view.engines[one.engine_serial], one.tail, cycles=int(first.cycles))
-    scope = expected_scope(view, flown, one.tail, cause=first.cause, slot=first.slot, only_cause=only_cause)
     rating = view.tails[one.tail].flying.rating
+    if exchanged:
+        scope = _exchanged_scope(view, flown, one.tail, slot=first.slot)
+    else:
+        scope = expected_scope(view, flown, one.tail, cause=first.cause, slot=first.slot)
     twin = after_visit(view, flown, scope, rating=rating, day=first.day)
     for module in twin.modules:
         module.csb, module.hsb = 0, 0.0
     return Run(scope.visit, ahead(view, twin, one.tail, dated=False))
 
 
-def expected_scope(view: Picture, engine: EngineState, tail: str, *, cause: str, slot: int, only_cause: bool) -> Scope:
+def _exchanged_scope(view: Picture, engine: EngineState, tail: str, *, slot: int) -> Scope:
+    """Return an exchange as work on the engine: the module comes back restored, its parts good for the build goal.
+
+    Without margin the module that has lost most is exchanged (a second one at the same time is seldom on the shelf).
+    """
+    rating = view.tails[tail].flying.rating
+    worst = min(engine.modules, key=lambda m: (-m.lost_degC(rating), m.spec.slot)).spec.slot
+    slots = {slot if slot >= 0 else worst}
+    goal = view.strategy(engine.spec.engine_type).build_goal_cycles
+    levels = tuple(RESTORATION if m.spec.slot in slots else NONE for m in engine.modules)
+    replace = tuple(
+        tuple(
+            i
+            for i, part in enumerate(m.parts)
+            if part.left(m.run, rating, part.epochs[-1]) < min(goal, part.epochs[-1].limits[rating])
+        )
+        if m.spec.slot in slots
+        else ()
+        for m in engine.modules
+    )
+    return Scope("module_exchange", levels, replace)
+
+
+def expected_scope(view: Picture, engine: EngineState, tail: str, *, cause: str, slot: int) -> Scope:
     """Return the work on an engine (in its state of that day) that comes off a tail for a cause."""
     aircraft = view.tails[tail]
     seen = view.world.matching.view(aircraft, engine, Removal(0, cause, slot))
@@ -69,7 +94,7 @@ def expected_scope(view: Picture, engine: EngineState, tail: str, *, cause: str,
         seen,
         goal_cycles=strategy.build_goal_cycles,
         stub_cycles=strategy.stub_cycles,
-        only_cause=only_cause,
+        only_cause=False,
         catalogue=view.setup.catalogue,
     )
 
@@ -95,8 +120,11 @@ def _per_month(shop: ShopSpec) -> float:
     return math.inf if shop.per_month is None else shop.per_month
 
 
-def shop_load(shops: tuple[ShopSpec, ...], per_month: float, *, horizon_days: float) -> ShopLoad:
-    """Return how a type's engine shops bear so many inductions a month."""
+def shop_load(shops: tuple[ShopSpec, ...], per_month: float, *, horizon_days: float, spread: float = 1.0) -> ShopLoad:
+    """Return how a type's engine shops bear so many inductions a month.
+
+    ``spread``: variance over mean of inductions in a long time.
+    """
     slots = sum(_per_month(shop) for shop in shops)
     if not shops or slots == math.inf:
         return ShopLoad(math.inf, 0.0, 0.0)
@@ -104,12 +132,12 @@ def shop_load(shops: tuple[ShopSpec, ...], per_month: float, *, horizon_days: fl
     if all(shop.bays is not None for shop in shops):
         return ShopLoad(slots, _bay_wait(shops, per_month), load)
     interval = DAYS_PER_MONTH / slots
-    wait = slot_wait_days(per_day=per_month / DAYS_PER_MONTH, interval_days=interval)
+    wait = slot_wait_days(per_day=per_month / DAYS_PER_MONTH, interval_days=interval, spread=spread)
     # a queue near or beyond saturation has not reached its long-run length within the horizon
-    return ShopLoad(slots, min(wait, interval / 2.0 + _fluid_wait(load, interval, horizon_days)), load)
+    return ShopLoad(slots, min(wait, interval / 2.0 + _fluid_wait(load, interval, horizon_days, spread)), load)
 
 
-def _fluid_wait(load: float, interval: float, horizon_days: float) -> float:
+def _fluid_wait(load: float, interval: float, horizon_days: float, spread: float = 1.0) -> float:
     """Return the mean wait over the horizon of a queue that starts empty: its drift, and its random walk.
 
     A reflected random walk without drift stands at ``sqrt(2 variance t / pi)`` on average (Harrison, *Brownian
@@ -117,7 +145,7 @@ def _fluid_wait(load: float, interval: float, horizon_days: float) -> float:
     end.
     """
     drift = max(0.0, load - 1.0) * horizon_days / 2.0
-    return drift + math.sqrt(load * interval * horizon_days) * 2.0 / 3.0 * math.sqrt(2.0 / math.pi)
+    return drift + math.sqrt(spread * load * interval * horizon_days) * 2.0 / 3.0 * math.sqrt(2.0 / math.pi)
 
 
 def _bay_wait(shops: tuple[ShopSpec, ...], per_month: float) -> float:

@@ -15,7 +15,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from planner.causes_ahead import PLANNED, Ahead, FirstRemoval, first_removal, gathered
+from planner.causes_ahead import PLANNED, Ahead, FirstRemoval, Months, first_removal, gathered
 from planner.next_runs import Run
 
 Floats = NDArray[np.float64]
@@ -44,7 +44,7 @@ class Renewing(NamedTuple):
 def removal_rates(
     positions: Sequence[Position],
     spares: Sequence[Ahead],
-    edges: Floats,
+    months: Months,
     *,
     slots: int,
     renewing: Renewing,
@@ -55,20 +55,20 @@ def removal_rates(
     ``spares``: what is ahead of each spare that stands ready. ``exchanged_frac``: share of removals that find a
     module on the shelf. Shape of the result: (positions, months, slots + 1, 2).
     """
-    months = edges.size - 1
+    count = len(months)
     if not positions:
-        return np.zeros((0, months, slots + 1, 2))
+        return np.zeros((0, count, slots + 1, 2))
     keep = renewing.whole if exchanged_frac == 0.0 else renewing.whole | renewing.exchanged
-    first = [_one_run(one.ahead, edges, slots, keep) for one in positions]
-    after = [_after(one, edges, slots, renewing, exchanged_frac) for one in positions]
-    ready = [_one_run(one, edges, slots, keep) for one in spares] or [_never(months, slots)]
+    first = [_one_run(one.ahead, months, slots, keep) for one in positions]
+    after = [_after(one, months, slots, renewing, exchanged_frac) for one in positions]
+    ready = [_one_run(one, months, slots, keep) for one in spares] or [_never(count, slots)]
     every, ends = np.array([one.counts for one in first]), np.array([one.ends for one in first])
     later_counts, later_ends = np.array([one.counts for one in after]), np.array([one.ends for one in after])
     spare_counts = np.mean([one.counts for one in ready], axis=0)
     spare_ends = np.mean([one.ends for one in ready], axis=0)
     unused = float(len(spares))
-    for month in range(months - 1):
-        ending, rest = ends[:, month], months - month - 1
+    for month in range(count - 1):
+        ending, rest = ends[:, month], count - month - 1
         total = float(ending.sum())
         share = min(1.0, unused / total) if total > 0.0 else 0.0
         unused = max(0.0, unused - total)
@@ -76,17 +76,16 @@ def removal_rates(
         every[:, month + 1 :] += ending[:, None, None, None] * counts
         chance = share * spare_ends[None, :rest] + (1.0 - share) * later_ends[:, :rest]
         ends[:, month + 1 :] += ending[:, None] * chance
-    operating = np.array([_operating(one, edges) for one in positions])
+    operating = np.array([_operating(one, months.edges) for one in positions])
     return np.asarray(every * operating[:, :, None, None])
 
 
-def _after(one: Position, edges: Floats, slots: int, renewing: Renewing, exchanged_frac: float) -> _RunLaw:
+def _after(one: Position, months: Months, slots: int, renewing: Renewing, exchanged_frac: float) -> _RunLaw:
     """Return the law of the run after a removal, mixed over the ways out."""
-    months = edges.size - 1
-    whole = _one_run(one.whole.after, edges, slots, renewing.whole) if one.whole else _never(months, slots)
+    whole = _one_run(one.whole.after, months, slots, renewing.whole) if one.whole else _never(len(months), slots)
     if exchanged_frac == 0.0 or one.exchanged is None:
         return whole
-    other = _one_run(one.exchanged.after, edges, slots, renewing.exchanged)
+    other = _one_run(one.exchanged.after, months, slots, renewing.exchanged)
     return _RunLaw(
         (1.0 - exchanged_frac) * whole.counts + exchanged_frac * other.counts,
         (1.0 - exchanged_frac) * whole.ends + exchanged_frac * other.ends,
@@ -104,21 +103,19 @@ def _never(months: int, slots: int) -> _RunLaw:
     return _RunLaw(np.zeros((months, slots + 1, 2)), np.zeros(months))
 
 
-def _one_run(one: Ahead, edges: Floats, slots: int, renewing: frozenset[int]) -> _RunLaw:
+def _one_run(one: Ahead, months: Months, slots: int, renewing: frozenset[int]) -> _RunLaw:
     """Return a run's law.
 
     A chance cause whose repair leaves the rest of the engine as it was does not end the run: it comes again and again
     while the run lasts, and the planned cause comes when it would have come (minimal repair; Barlow and Hunter,
     *Operations Research* 8, 1960).
     """
-    law = first_removal(one._replace(chances=tuple(c for c in one.chances if c.slot in renewing)), edges)
-    counts, ends = _split(law, edges.size - 1, slots), law.by_month.sum(axis=1)
-    last = np.minimum(edges, one.planned_day)
-    cycles = np.array([one.use.cycles(day) for day in last])
-    hours = np.array([one.use.hours(day) for day in last])
+    law = first_removal(one._replace(chances=tuple(c for c in one.chances if c.slot in renewing)), months)
+    counts, ends = _split(law, len(months), slots), law.by_month.sum(axis=1)
+    cycles, hours = months.flown_until(one.use, one.planned_day)
     # on at the month's start, and at its end (or just before the planned day, where that cuts the month short)
     start = np.concatenate([[1.0], law.still_on[:-1]])
-    end = np.where(last[1:] < edges[1:], start, law.still_on)
+    end = np.where(months.edges[1:] > one.planned_day, start, law.still_on)
     for chance in one.chances:
         if chance.slot not in renewing:
             counts[:, chance.slot, 1] += (start + end) / 2.0 * np.diff(gathered(chance, cycles, hours))

@@ -118,10 +118,12 @@ def machine_repair(
     )
 
 
-def slot_wait_days(*, per_day: float, interval_days: float) -> float:
-    """Return the mean wait for a slot when one comes every ``interval_days`` and ``per_day`` jobs arrive at random.
+def slot_wait_days(*, per_day: float, interval_days: float, spread: float = 1.0) -> float:
+    """Return the mean wait for a slot when one comes every ``interval_days`` and ``per_day`` jobs arrive.
 
-    Inf when jobs are not fewer than slots. With hardly any job it is half an interval.
+    ``spread``: variance over mean of the number that arrives in a long time; exact for 1 (arrivals at random),
+    for others the queue's part is scaled by it as in heavy traffic (Kingman, *J. Royal Statistical Society B* 24,
+    1962; from memory). Inf when jobs are not fewer than slots. With hardly any job it is half an interval.
     """
     load = per_day * interval_days
-    return math.inf if load >= 1.0 else interval_days / (2.0 * (1.0 - load))
+    return math.inf if load >= 1.0 else interval_days * (0.5 + spread * load / (2.0 * (1.0 - load)))
