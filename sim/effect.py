@@ -46,7 +46,7 @@ class PerPoint(NamedTuple):
     fuel_frac: float
 
     @property
-    def fuel_frac_per_degC(self) -> float:  # noqa: N802, the unit's name
+    def fuel_frac_per_degC(self) -> float:
         return self.fuel_frac / self.degC
 
 
@@ -87,7 +87,7 @@ def solved_effect(matrix: Matrix, lost: Mapping[Change, float]) -> Effect:
     )
 
 
-def degC_per_point(matrix: Matrix, components: Sequence[str], *, flow_frac_per_eff_frac: float = 0.0) -> PerPoint:  # noqa: N802
+def degC_per_point(matrix: Matrix, components: Sequence[str], *, flow_frac_per_eff_frac: float = 0.0) -> PerPoint:
     """Return what one point of efficiency lost in every component of a module takes in margin and cruise fuel.
 
     ``flow_frac_per_eff_frac`` adds the flow that is lost with it: a compressor's capacity, the combustor's pressure, a
