@@ -127,11 +127,16 @@ def module_rows(past: Past, where: Places) -> list[Row]:
             "hours_since_build": round(module.hsb, 2),
             "cycles_since_build": module.csb,
             "first_run": "yes" if module.first_run else "no",
-            "margin_lost_degC": margin_lost(module, at),
+            "margin_lost_degC": round(margin_lost(module, at) - _build_luck(engine, module), 3),
         }
         row |= {"engine_serial": engine.serial} if engine else {"place": "pool", "base": "Home"}
         rows.append(row)
     return rows
+
+
+def _build_luck(engine: EngineState | None, module: ModuleState) -> float:
+    """Return what the last build was better than the type's margin; the records book it on the HPT."""
+    return engine.offset_degC if engine is not None and module.spec.module == "HPT" else 0.0
 
 
 def margin_rows(past: Past, where: Places, seed: int) -> list[Row]:
