@@ -105,9 +105,9 @@ def answer(known: Sequence[TypeModel], *, module_types: Sequence[Row]) -> Engine
         name, top = one.cycle.engine_type, one.matrices[0]
         modules = [str(row["module"]) for row in module_types if row["engine_type"] == name]
         result.stations.extend(_station_rows(one.cycle, top))
-        result.coefficients.extend(coefficient_rows(name, top, modules))
-        result.ratings.extend(_rating_rows(one.kind, one.ratings, one.matrices))
-        result.ambient.extend(_ambient_rows(name, one.ratings, one.matrices))
+        result.coefficients.extend(coefficient_rows(top, engine_type=name, modules=modules))
+        result.ratings.extend(_rating_rows(one))
+        result.ambient.extend(_ambient_rows(one))
         result.warnings.extend(one.cycle.warnings)
         result.warnings.append(one.level)
         result.warnings.extend(
@@ -171,7 +171,7 @@ def _station_rows(cycle: TypeCycle, top: Matrix) -> list[dict[str, Any]]:
     ]
 
 
-def coefficient_rows(engine_type: str, matrix: Matrix, modules: Sequence[str]) -> list[dict[str, Any]]:
+def coefficient_rows(matrix: Matrix, *, engine_type: str, modules: Sequence[str]) -> list[dict[str, Any]]:
     """Return a row for each change of each component, under the module that holds it (else under its own name)."""
     spools = matrix.path.spools
     holder = {component: module for module in modules for component in components_of(module, spools=spools)}
@@ -196,8 +196,9 @@ def coefficient_rows(engine_type: str, matrix: Matrix, modules: Sequence[str]) -
     return result
 
 
-def _rating_rows(kind: Row, ratings: Sequence[Row], matrices: Sequence[Matrix]) -> list[dict[str, Any]]:
+def _rating_rows(one: TypeModel) -> list[dict[str, Any]]:
     """Return margin and hottest ambient of a new engine at each rating, by the table's slope and by the cycle's."""
+    kind, ratings, matrices = one.kind, one.ratings, one.matrices
     given = cell(kind, "egt_per_ambient")
     corner = matrices[0].conditions.corner_point_K - ZERO_DEGC_K
     result = []
@@ -226,16 +227,21 @@ def _rating_rows(kind: Row, ratings: Sequence[Row], matrices: Sequence[Matrix]) 
     return result
 
 
-def _ambient_rows(name: str, ratings: Sequence[Row], matrices: Sequence[Matrix]) -> list[dict[str, Any]]:
+def _ambient_rows(one: TypeModel) -> list[dict[str, Any]]:
     """Return the margin of a new engine against ambient temperature at each rating's full thrust."""
     ambient = np.arange(-10.0, 50.1, 5.0)
     result = []
-    for rating, matrix in zip(ratings, matrices, strict=True):
+    for rating, matrix in zip(one.ratings, one.matrices, strict=True):
         share = np.full_like(ambient, matrix.conditions.takeoff_thrust_frac)
         egt = takeoff_egt(matrix.path, station=matrix.station, ambient_K=ambient + ZERO_DEGC_K, thrust_frac=share)
         margin = float(rating["new_margin_degC"]) + matrix.egt_K - egt
         result += [
-            {"engine_type": name, "rating": rating["rating"], "ambient_degC": float(a), "margin_degC": float(m)}
+            {
+                "engine_type": one.cycle.engine_type,
+                "rating": rating["rating"],
+                "ambient_degC": float(a),
+                "margin_degC": float(m),
+            }
             for a, m in zip(ambient, margin, strict=True)
         ]
     return result

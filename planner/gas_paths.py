@@ -79,7 +79,7 @@ def cell(row: Row, name: str) -> float | None:
     return None if math.isnan(number) else number
 
 
-def word(row: Row, name: str, blank: str) -> str:
+def word(row: Row, name: str, *, blank: str) -> str:
     """Return a word of a row, or what a blank cell means."""
     value = row.get(name)
     return value if isinstance(value, str) and value else blank
@@ -92,9 +92,9 @@ def type_cycle(engine_type: Row, *, cycle: Row | None, ratings: Sequence[Row]) -
     NoSolutionError where the model may not or cannot answer.
     """
     name, cells = str(engine_type["engine_type"]), cycle or {}
-    known, overall = _known(name, engine_type, cells, ratings)
+    known, overall = _known(engine_type, cells, ratings=ratings)
     spools = int(cell(cells, "spools") or TWO_SPOOLS)
-    exhaust = word(cells, "exhaust", SEPARATE)
+    exhaust = word(cells, "exhaust", blank=SEPARATE)
     fuel = cell(cells, "takeoff_fuel_kg_per_s")
     filled = gas_path(known, overall_pressure_ratio=overall, spools=spools, exhaust=exhaust, takeoff_fuel_kg_per_s=fuel)
     why = "no row in cycles" if cycle is None else "blank cells of cycles"
@@ -107,15 +107,16 @@ def type_cycle(engine_type: Row, *, cycle: Row | None, ratings: Sequence[Row]) -
     return TypeCycle(
         name,
         filled.path,
-        word(cells, "egt_station", LPT_INLET),
+        word(cells, "egt_station", blank=LPT_INLET),
         filled.given,
         (30.0 if corner is None else corner) + ZERO_DEGC_K,
         tuple(warnings),
     )
 
 
-def _known(name: str, engine_type: Row, cells: Row, ratings: Sequence[Row]) -> tuple[dict[str, float], float]:
+def _known(engine_type: Row, cells: Row, *, ratings: Sequence[Row]) -> tuple[dict[str, float], float]:
     """Return the fields of the gas path that the tables give, and the overall pressure ratio."""
+    name = str(engine_type["engine_type"])
     bypass, overall = cell(engine_type, "bypass_ratio"), cell(engine_type, "overall_pressure_ratio")
     for value, column in ((bypass, "bypass_ratio"), (overall, "overall_pressure_ratio")):
         if value is None:

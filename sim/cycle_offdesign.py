@@ -81,7 +81,7 @@ def misfit(engine: Engine, done: Walk, *, flight: Flight, thrust_N: Values, lost
     if path.spools == THREE_SPOOLS:
         middle = np.log(choked_throat(hot.ipt_inlet) / (sizes.ipt_throat * opened("ipt")))
     else:
-        middle = _booster_misfit(engine, done, lost)
+        middle = _booster_misfit(engine, done, lost=lost)
     if path.exhaust == MIXED:
         core_static = exhaust.core.pressure - mixer_head(exhaust.core) / sizes.mixer_core**2
         bypass_static = exhaust.bypass.pressure - mixer_head(exhaust.bypass) / sizes.mixer_bypass**2
@@ -100,7 +100,7 @@ def misfit(engine: Engine, done: Walk, *, flight: Flight, thrust_N: Values, lost
     )
 
 
-def _booster_misfit(engine: Engine, done: Walk, lost: Lost) -> Values:
+def _booster_misfit(engine: Engine, done: Walk, *, lost: Lost) -> Values:
     """Return how far the booster's work is from what its shaft's speed allows; without a booster it has no pressure."""
     sizes, cold, slope = engine.sizes, done.compressors, engine.path.loading_slope
 

@@ -74,7 +74,7 @@ def gas_path(
     if not OVERALL_RANGE[0] <= overall_pressure_ratio <= OVERALL_RANGE[1]:
         raise OutOfRangeError("overall pressure ratio", f"{overall_pressure_ratio:g}", "10 to 60")
     values = {**CUSTOMARY, **known}
-    assumed = [_words(name, spools) for name in CUSTOMARY if _is_assumed(name, known, spools)]
+    assumed = [_words(name, spools) for name in CUSTOMARY if _is_assumed(name, known, spools=spools)]
     best_fan = "fan_pressure_ratio" not in known
     fuel_known = takeoff_fuel_kg_per_s is not None and "turbine_entry_K" not in known
     fan = values.setdefault("fan_pressure_ratio", customary_fan(values["bypass_ratio"]))
@@ -102,7 +102,7 @@ def gas_path(
     return Filled(path, given, tuple(assumed))
 
 
-def _is_assumed(name: str, known: Mapping[str, float], spools: int) -> bool:
+def _is_assumed(name: str, known: Mapping[str, float], *, spools: int) -> bool:
     """Return whether a customary figure is used for a component that the engine has."""
     return name not in known and (spools == THREE_SPOOLS or not name.startswith("ipt_"))
 

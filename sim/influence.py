@@ -160,7 +160,7 @@ def influences(
             if not solved[part, k, 0]:
                 raise NoSolutionError(name, f"the engine has no acceptable root there (engine {k + 1})")
     return [
-        _matrix(path, conditions[k], stations[k], level=level[:, :, k], slope=slope[:, :, :, k])
+        _matrix(path, conditions[k], station=stations[k], level=level[:, :, k], slope=slope[:, :, :, k])
         for k, path in enumerate(paths)
     ]
 
@@ -232,7 +232,7 @@ def _sensitivities(engine: Engine, state: Operating, *, flight: Flight, thrust_N
     return outcome[:, 0], total
 
 
-def _matrix(path: GasPath[float], conditions: Conditions, station: str, *, level: Values, slope: Values) -> Matrix:
+def _matrix(path: GasPath[float], conditions: Conditions, *, station: str, level: Values, slope: Values) -> Matrix:
     """Return the matrix from levels (3, 2, variants) and slopes (3, changes + 2, 2, variants)."""
     probe, fuel = STATIONS.index(station), 2
     egt = level[probe, 0]
