@@ -7,6 +7,7 @@ state on the as-of date and the log of how it came about.
 from __future__ import annotations
 
 import datetime as dt
+import math
 import tempfile
 from dataclasses import replace
 from pathlib import Path
@@ -34,6 +35,7 @@ _CODES = {
     "gearbox": "GB",
 }
 SPARE_ENGINES = {"N": 5, "W": 3}
+READY_SPARES = {"N": 3, "W": 2}  # of them on the shelf on the as-of date; the rest are in shops
 SPARE_MODULES = {"N": ("fan-booster", "LPT", "LPT", "HPT", "gearbox"), "W": ("fan", "LPT", "gearbox")}
 _MODIFIED_FROM = dt.date(2018, 1, 1)  # deliveries from here on carry the modified HPT and the new LPT
 _RATING_CHANGE = dt.date(2022, 4, 1)
@@ -71,6 +73,9 @@ def live(tails: list[Tail], tables: dict[str, list[Row]], *, scale: float, seed:
     for aircraft in world.aircraft:
         aircraft.book_now()
     _fill_the_gaps(world)
+    for kind, count in READY_SPARES.items():
+        if kind in world.engine_pools:
+            _stock_the_shelf(world, kind, max(1, round(count * scale)))
     return Past(world, start, delivered, changed)
 
 
@@ -207,6 +212,25 @@ def _hurried(world: World, kind: str) -> EngineState | None:
     row = next(e for e in world.setup.fleet.engines if e.engine_serial == engine.serial)
     world.bench.work_on(engine, begun_scope(world, replace(row, visit="core"), engine), day=world.env.now)
     return engine
+
+
+def _stock_the_shelf(world: World, kind: str, count: int) -> None:
+    """End visits early until so many spares are ready, as far as there are engines off the wing."""
+    pool = world.engine_pools[kind].engines
+    while len(pool) < count:
+        hung = {e.serial for a in world.aircraft for e in a.engines if e is not None}
+        ready = {e.serial for e in pool}
+        begun = [e for e in world.all_engines if e.spec.engine_type == kind and e.serial not in hung | ready]
+        if not begun:
+            return
+        engine = min(begun, key=lambda e: (world.under_way.get(e.serial, (math.inf, None))[0], e.serial))
+        work = world.under_way.pop(engine.serial, None)
+        if work is not None:
+            work[1]()
+        else:
+            row = next(e for e in world.setup.fleet.engines if e.engine_serial == engine.serial)
+            world.bench.work_on(engine, begun_scope(world, replace(row, visit="core"), engine), day=world.env.now)
+        pool.append(engine)
 
 
 def margin_lost(module: ModuleState, rating: int) -> float:
