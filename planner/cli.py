@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import importlib
 import sys
+from pathlib import Path
 
 import click
 
@@ -31,14 +32,20 @@ COMMANDS: dict[str, str] = {
 }
 
 
+def installed() -> list[str]:
+    """Return the commands that this version has, in the order of COMMANDS."""
+    here = Path(__file__).parent / "commands"
+    return [name for name in COMMANDS if (here / f"{name}.py").is_file()]
+
+
 class _Frame(click.Group):
     """A group whose commands are imported when they are called."""
 
     def list_commands(self, ctx: click.Context) -> list[str]:
-        return list(COMMANDS)
+        return installed()
 
     def get_command(self, ctx: click.Context, cmd_name: str) -> click.Command | None:
-        if cmd_name not in COMMANDS:
+        if cmd_name not in installed():
             return None
         module = importlib.import_module(f"planner.commands.{cmd_name}")
         command: click.Command = module.command
@@ -46,7 +53,7 @@ class _Frame(click.Group):
 
     def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
         with formatter.section("Commands"):
-            formatter.write_dl(list(COMMANDS.items()))
+            formatter.write_dl([(name, COMMANDS[name]) for name in installed()])
 
 
 @click.command(cls=_Frame, context_settings={"help_option_names": ["-h", "--help"]})

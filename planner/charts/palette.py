@@ -4,7 +4,7 @@ every series also has a shape, a dash or a label."""
 from __future__ import annotations
 
 # mid-tones that hold on both themes; order is the order of series
-SERIES = ("#2f7fb5", "#c2571a", "#2a8f6d", "#9a5fb0", "#8a7a1f", "#b8436a", "#5f7482", "#3f6fd1")
+SERIES = ("#2f7fb5", "#c2571a", "#2a8f6d", "#9a5fb0", "#8a7a1f", "#b8436a", "#5f7482", "#6a58d6", "#a0522d")
 DASHES = ((1, 0), (6, 3), (2, 2), (8, 3, 2, 3))
 SHAPES = ("circle", "square", "triangle-up", "diamond", "cross")
 GOOD, WARN, STOP = "#2a8f6d", "#b07a10", "#c03f3f"

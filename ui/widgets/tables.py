@@ -26,17 +26,19 @@ def heading(name: str) -> str:
     return text[:1].upper() + text[1:]
 
 
-def show(rows: list[dict[str, Any]], *, name: str, height: int | None = None, money: tuple[str, ...] = ()) -> None:
-    """Show rows as a table with a download below. ``money``: columns shown in M USD."""
+def show(
+    rows: list[dict[str, Any]], *, name: str, height: int | None = None, money: tuple[str, ...] = (), digits: int = 1
+) -> None:
+    """Show rows as a table with a download below. ``money``: columns shown in M USD; ``digits`` of other numbers."""
     frame = pd.DataFrame(rows)
-    shown = frame.copy()
+    shown = frame.convert_dtypes(convert_string=False, convert_boolean=False)
     config = {}
     for column in shown.columns:
         if column in money:
             shown[column] = shown[column] / 1e6
             config[column] = st.column_config.NumberColumn(f"{heading(column)}, M", format="%.2f")
         elif pd.api.types.is_float_dtype(shown[column]):
-            config[column] = st.column_config.NumberColumn(heading(column), format="%.1f")
+            config[column] = st.column_config.NumberColumn(heading(column), format=f"%.{digits}f")
         else:
             config[column] = st.column_config.Column(heading(column))
     st.dataframe(shown, hide_index=True, width="stretch", height=height or "auto", column_config=config)
