@@ -13,6 +13,8 @@ from planner.module_worth import Restoration, restorations, spare_on_engine
 from planner.records import Records
 from sim.errors import RecordsError
 
+DEMO = "DEMO: the fleet is invented"
+
 _TABLES = ("engine_types", "ratings", "cycles", "module_types")
 
 
@@ -61,7 +63,8 @@ def of_records(
     if spare is not None and engine_serial is not None:
         exchange = spare_on_engine(fleet, engine_serial=engine_serial, module_serial=spare, fuel=share)
         tables["spare_on_engine"].append(exchange._asdict())
-    return FleetAnswer(tables, best_sentences(worth), [*refused, *result.warnings], records.fingerprint)
+    demo = [DEMO] if fleet.settings.demo else []
+    return FleetAnswer(tables, best_sentences(worth), [*demo, *refused, *result.warnings], records.fingerprint)
 
 
 def best_sentences(worth: list[Restoration]) -> list[str]:

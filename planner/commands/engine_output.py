@@ -9,7 +9,7 @@ from typing import Any
 import click
 
 from planner.commands.output import envelope, footer, print_json, table_text
-from planner.engine_fleet import FleetAnswer, ask
+from planner.engine_fleet import DEMO, FleetAnswer, ask
 from planner.schema.registry import OUTPUTS
 
 Row = Mapping[str, Any]
@@ -29,6 +29,7 @@ def print_engine(
 def _text(found: FleetAnswer) -> str:
     tables = found.tables
     parts = [
+        *([DEMO] if DEMO in found.warnings else []),
         "Stations, highest rating",
         _table("stations", tables["stations"], {"flow_kg_per_s": 1, "temperature_K": 1, "pressure_kPa": 1}),
         "",
@@ -47,7 +48,7 @@ def _text(found: FleetAnswer) -> str:
         parts.append(
             _table("spare_on_engine", tables["spare_on_engine"], dict.fromkeys(OUTPUTS["spare_on_engine"].names, 1))
         )
-    return "\n".join([*parts, "", footer(found.warnings, inputs=found.inputs)])
+    return "\n".join([*parts, "", footer([one for one in found.warnings if one != DEMO], inputs=found.inputs)])
 
 
 def _table(name: str, rows: Sequence[Row], digits: Mapping[str, int]) -> str:

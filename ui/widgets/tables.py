@@ -31,7 +31,7 @@ def show(
 ) -> None:
     """Show rows as a table with a download below. ``money``: columns shown in M USD; ``digits`` of other numbers."""
     frame = pd.DataFrame(rows)
-    shown = frame.convert_dtypes(convert_string=False, convert_boolean=False)
+    shown = frame.convert_dtypes()
     config = {}
     for column in shown.columns:
         if column in money:
