@@ -79,10 +79,14 @@ class Demand(NamedTuple):
         return total
 
 
-def demands(fleet: Fleet, strategy: str, *, months: int) -> tuple[Picture, tuple[Demand, ...]]:
+def demands(
+    fleet: Fleet, strategy: str, *, months: int, flown_as: Fleet | None = None
+) -> tuple[Picture, tuple[Demand, ...]]:
     """Return the demand of every type over so many months, and the picture that it was read from.
 
-    Raises RequestError for a strategy that the fleet does not have, or a span outside 1 to 480 months.
+    ``flown_as``: the same fleet with another use, derate or base from today on; what its modules have lost by
+    today, and how fast each wears of its own, stays what was measured as they were flown. Raises RequestError for
+    a strategy that the fleet does not have, or a span outside 1 to 480 months.
     """
     rows = {row.strategy: row for row in fleet.strategies}
     if strategy not in rows:
@@ -90,6 +94,12 @@ def demands(fleet: Fleet, strategy: str, *, months: int) -> tuple[Picture, tuple
     if not 1 <= months <= 480:
         raise RequestError("months ahead", str(months), "1 to 480")
     view = picture(replace(fleet, strategies=(rows[strategy],)))
+    if flown_as is not None:
+        changed = picture(replace(flown_as, strategies=(rows[strategy],)))
+        for serial, module in changed.modules.items():
+            measured = view.modules[serial]
+            module.loss, module.permanent, module.factor = measured.loss, measured.permanent, measured.factor
+        view = changed
     edges = month_edges(fleet.settings.as_of, months)
     exchanges = rows[strategy].way_out != "whole_engine"
     return view, tuple(_of_type(view, kind, strategy, edges, exchanges=exchanges) for kind in view.setup.types.values())
@@ -148,7 +158,8 @@ def _positions(view: Picture, kind: TypeSpec, *, exchanges: bool) -> tuple[Posit
 
 
 def usable_modules(view: Picture, kind: TypeSpec) -> dict[str, int]:
-    """Return by module how many owned ones outside engines may mate with at least half of the type's flying engines."""
+    """Return by module how many owned ones outside engines may mate with at least half of the type's flying
+    engines."""
     flying = [
         (engine, process.flying)
         for process in view.tails.values()

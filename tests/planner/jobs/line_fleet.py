@@ -100,7 +100,9 @@ def line_fleet(
         wear=tuple(_wear(name) for name in MODULES) if wear else (),
         hazards=tuple(_hazards()) if hazards else (),
         work=tuple(row for name in MODULES for row in _work(name)),
-        visits=tuple(Visit(engine_type="N", visit=v, engine_level_usd=usd, test_usd=60e3) for v, (_, usd) in VISITS.items()),
+        visits=tuple(
+            Visit(engine_type="N", visit=v, engine_level_usd=usd, test_usd=60e3) for v, (_, usd) in VISITS.items()
+        ),
         part_types=tuple(
             PartType(part_number=f"{name}-D", engine_type="N", module=name, price_usd=300e3) for name in LIMITS
         )
