@@ -7,6 +7,7 @@ unseen, and nothing is guessed. Cells that cannot be read are None and told; rul
 
 from __future__ import annotations
 
+import csv
 from collections.abc import Iterable, Sequence
 from pathlib import Path
 from typing import Any, NamedTuple
@@ -201,9 +202,10 @@ def _sheet(source: Source) -> tuple[Sheet | None, list[Problem]]:
         if faults := rule.check(source):
             return None, problems(rule, faults, file=source.file)
     found = [p for rule in FORM_RULES for p in problems(rule, rule.check(source), file=source.file)]
-    if faults := ROW_RULE.check(source):
-        return None, found + problems(ROW_RULE, faults, file=source.file)
-    return sheet_of(source), found
+    try:
+        return sheet_of(source), found
+    except csv.Error:
+        return None, found + problems(ROW_RULE, ROW_RULE.check(source), file=source.file)
 
 
 def read_sheets(

@@ -67,6 +67,16 @@ class PartFact(NamedTuple):
     over: int
 
 
+class Stretch(NamedTuple):
+    """One stretch of a part's history."""
+
+    first: dt.date
+    last: dt.date
+    row: int
+    cycles: int
+    hours: float
+
+
 class Facts:
     """Records with indexes. Cells that could not be read are None in the records and are left out here."""
 
@@ -183,6 +193,21 @@ class Facts:
         return life.rows_for(serial, rows) if number in self._ranged else rows
 
     @cached_property
+    def stretches(self) -> dict[str, list[Stretch]]:
+        """The readable stretches of each part's history in order of their first day."""
+        found: dict[str, list[Stretch]] = {}
+        rows = self.records["part_history"]
+        bad = {row for row, _ in rows.faulty}
+        for row, serial, first, last, cycles, hours in rows.pick(
+            "part_serial", "from_date", "to_date", "cycles", "hours"
+        ):
+            if serial and first and row not in bad:
+                found.setdefault(serial, []).append(Stretch(first, last or self.as_of, row, cycles, hours))
+        for stretches in found.values():
+            stretches.sort()
+        return found
+
+    @cached_property
     def lives(self) -> list[PartLife]:
         return flown_by_part(self.records)
 
@@ -216,16 +241,18 @@ class Facts:
                 if (number, rating) not in held:
                     held[number, rating] = life.in_force(rows, rating, 0.0)
                 limit = held[number, rating]
-            left, over = self._left(proven, rating, rows, kind.rule)
+            left, over = self._left(proven, rating, rows, kind.rule, limit)
             found.append(
                 PartFact(row, serial, number, module_serial or "", proven, cycles or 0, rating, limit, left, over)
             )
         return found
 
-    def _left(self, proven: PartLife, rating: str, rows: tuple[PartLimit, ...], rule: str) -> tuple[int, int]:
+    def _left(
+        self, proven: PartLife, rating: str, rows: tuple[PartLimit, ...], rule: str, limit: PartLimit | None
+    ) -> tuple[int, int]:
         """Return cycles left at a rating and cycles past the limit."""
         if len(proven.flown) <= 1 and (not proven.flown or proven.flown[0][0] == rating):
-            limit = life.in_force(rows, rating, 0.0)  # one rating: plain subtraction, the same by both rules
+            # one rating: plain subtraction, the same by both rules
             if limit is None:
                 return 0, 0
             left = limit.limit_cycles - sum(cycles for _, cycles in proven.flown)

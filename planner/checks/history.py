@@ -5,34 +5,12 @@ from __future__ import annotations
 import datetime as dt
 from collections.abc import Iterator
 from itertools import pairwise
-from typing import NamedTuple
 
 from planner.checks.facts import Facts
 from planner.checks.fault import Fault, Rule, stops, warns
 from planner.part_life import history_by_part
 
 _DAY = dt.timedelta(days=1)
-
-
-class _Stretch(NamedTuple):
-    first: dt.date
-    last: dt.date
-    row: int
-    cycles: int
-    hours: float
-
-
-def _stretches(facts: Facts) -> dict[str, list[_Stretch]]:
-    """Return the readable stretches of each part in order of their first day."""
-    found: dict[str, list[_Stretch]] = {}
-    names = ("part_serial", "from_date", "to_date", "cycles", "hours")
-    bad = {row for row, _ in facts.records["part_history"].faulty}
-    for row, serial, first, last, cycles, hours in facts.records["part_history"].pick(*names):
-        if serial and first and row not in bad:
-            found.setdefault(serial, []).append(_Stretch(first, last or facts.as_of, row, cycles, hours))
-    for stretches in found.values():
-        stretches.sort()
-    return found
 
 
 def history_adds_up_to_cycles_since_new(facts: Facts) -> Iterator[Fault]:
@@ -58,7 +36,7 @@ def history_adds_up_to_cycles_since_new(facts: Facts) -> Iterator[Fault]:
 def history_has_no_unexplained_gap(facts: Facts) -> Iterator[Fault]:
     """A gap in days is a gap only where cycles are missing too: a part on a shelf flies nothing."""
     counts = dict(zip(facts.records["parts"]["part_serial"], facts.records["parts"]["cycles_since_new"], strict=True))
-    for serial, stretches in _stretches(facts).items():
+    for serial, stretches in facts.stretches.items():
         missing = (counts.get(serial) or 0) - sum(stretch.cycles for stretch in stretches)
         if missing <= 0:
             continue
@@ -73,7 +51,7 @@ def history_has_no_unexplained_gap(facts: Facts) -> Iterator[Fault]:
 
 
 def history_stretches_do_not_overlap(facts: Facts) -> Iterator[Fault]:
-    for serial, stretches in _stretches(facts).items():
+    for serial, stretches in facts.stretches.items():
         for before, after in pairwise(stretches):
             if after.first < before.last:
                 message = (
@@ -94,7 +72,7 @@ def history_begins_after_manufacture(facts: Facts) -> Iterator[Fault]:
 
 
 def history_fits_into_its_days(facts: Facts) -> Iterator[Fault]:
-    for serial, stretches in _stretches(facts).items():
+    for serial, stretches in facts.stretches.items():
         for stretch in stretches:
             days = (stretch.last - stretch.first).days + 1
             if days > 0 and (stretch.hours > 24 * days or stretch.cycles > 40 * days):

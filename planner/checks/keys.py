@@ -123,12 +123,16 @@ def ratings_belong_to_their_type(facts: Facts) -> Iterator[Fault]:
 def serials_do_not_look_alike(facts: Facts) -> Iterator[Fault]:
     for kind, columns in _SERIAL_COLUMNS.items():
         known: dict[str, str] = {}
+        seen: set[str] = set()
         for table, column in columns:
             first: dict[str, int] = {}
             for row, text in facts.records[table].pick(column):
                 if text:
                     first.setdefault(text, row)
             for text, row in first.items():
+                if text in seen:
+                    continue
+                seen.add(text)
                 look = look_of(text)
                 other = known.setdefault(look, text)
                 if other != text:

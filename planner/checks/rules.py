@@ -17,6 +17,7 @@ from planner.checks.history import HISTORY_RULES
 from planner.checks.keys import KEY_RULES
 from planner.checks.lives import LIFE_RULES
 from planner.checks.places import PLACE_RULES
+from planner.collector import collector_at_rest
 from planner.records import Records
 from planner.settings import SETTING_RULES
 from planner.tables import TABLE_RULES
@@ -39,8 +40,9 @@ def check(path: Path) -> tuple[Records, tuple[Problem, ...]]:
 
     Raises RequestError where there is no fleet.
     """
-    records, found = tables.read(path)
-    return records, in_order((*found, *record_problems(records)))
+    with collector_at_rest():
+        records, found = tables.read(path)
+        return records, in_order((*found, *record_problems(records)))
 
 
 def record_problems(records: Records) -> tuple[Problem, ...]:
