@@ -35,7 +35,7 @@ def _coefficients(rows: Rows, *, figure: str, factor: float, title: str, axis: s
     )
     order, changes = list(dict.fromkeys(frame["place"])), list(_CHANGES.values())
     base = alt.Chart(frame).encode(
-        y=alt.Y("place:N", sort=order, title=None),
+        y=alt.Y("place:N", sort=order, title=None, axis=alt.Axis(labelLimit=220)),
         yOffset=alt.YOffset("change:N", sort=changes),
         tooltip=[
             alt.Tooltip("place:N", title="component"),
