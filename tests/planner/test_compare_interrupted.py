@@ -7,19 +7,20 @@ import os
 import signal
 import subprocess
 import sys
+import time
 from pathlib import Path
 from typing import Any
 
 import pytest
 
-RUNS = 24
+RUNS = 40
 
 
 @pytest.fixture(scope="module")
 def fleet(tmp_path_factory: pytest.TempPathFactory) -> Path:
     """A small demo fleet."""
     folder = tmp_path_factory.mktemp("demo") / "fleet"
-    _spoolwright(folder.parent, "demo", str(folder), "--aircraft", "8")
+    _spoolwright(folder.parent, "demo", str(folder), "--aircraft", "6")
     return folder
 
 
@@ -41,7 +42,7 @@ def _environment(home: Path) -> dict[str, str]:
 
 
 def _compare(fleet: Path, *more: str, runs: int = RUNS, workers: int = 2) -> list[str]:
-    options = ("--runs", str(runs), "--horizon", "4", "--workers", str(workers))
+    options = ("--runs", str(runs), "--horizon", "3", "--workers", str(workers))
     return ["compare", str(fleet), *options, "--json", *more]
 
 
@@ -52,7 +53,7 @@ def _figures(text: str) -> dict[str, Any]:
 
 
 def _interrupt(home: Path, fleet: Path, number: int) -> tuple[int, str, str]:
-    """Start a comparison, send a signal once a few runs are told, and return exit code and what was printed."""
+    """Start a comparison, send a signal once a few runs are kept, and return exit code and what was printed."""
     study = subprocess.Popen(
         _command(*_compare(fleet)),
         env=_environment(home),
@@ -61,13 +62,16 @@ def _interrupt(home: Path, fleet: Path, number: int) -> tuple[int, str, str]:
         text=True,
         start_new_session=True,
     )
-    told = ""
-    while not told.startswith("runs ") or told.startswith("runs 0/"):
-        told = study.stderr.readline()
-        assert told, "it ended before a run was told"
+    while _bytes_kept(home) < 20_000:  # some eight rows
+        assert study.poll() is None, study.stderr.read()
+        time.sleep(0.01)
     (study.kill if number == signal.SIGKILL else lambda: os.killpg(study.pid, number))()
     out, err = study.communicate(timeout=30)
     return study.returncode, out, err
+
+
+def _bytes_kept(home: Path) -> int:
+    return sum(path.stat().st_size for path in home.glob("kept/*/*.rows"))
 
 
 @pytest.fixture(scope="module")
