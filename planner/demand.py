@@ -318,22 +318,22 @@ def stay_weights(days: float, lengths: Floats) -> Floats:
 
 
 def away_chance(demand: Demand, days: Floats) -> Floats:
-    """Return the chance that each position has an engine away in each month, given the days away by slot.
+    """Return the chance that each position has an engine away in each month, given the days away.
 
-    ``days`` has shape (slots + 1,); shape of the result (positions, months). A position never counts for more
-    than one.
+    ``days``: by slot, or by slot and kind, shape (slots + 1,) or (slots + 1, 2). Shape of the result: (positions,
+    months). A position never counts for more than one.
     """
-    months = demand.months
+    by_kind = np.broadcast_to(days[:, None] if days.ndim == 1 else days, demand.rates.shape[2:])
+    months, lengths = demand.months, np.diff(demand.edges)
     found = np.zeros(demand.rates.shape[:2])
-    by_slot = demand.rates.sum(axis=3)
-    for slot, stay in enumerate(days.tolist()):
-        if not stay > 0.0:
+    for (slot, which), stay in np.ndenumerate(by_kind):
+        rate = demand.rates[:, :, slot, which]
+        if not stay > 0.0 or not rate.any():
             continue
-        weights = stay_weights(stay, np.diff(demand.edges))
-        for lag in range(months):
-            if weights[lag] <= 0.0:
+        for lag, weight in enumerate(stay_weights(float(stay), lengths).tolist()):
+            if weight <= 0.0:
                 break
-            found[:, lag:] += weights[lag] * by_slot[:, : months - lag, slot]
+            found[:, lag:] += weight * rate[:, : months - lag]
     return np.minimum(found, 1.0)
 
 
@@ -342,3 +342,10 @@ def mean_days(demand: Demand) -> Floats:
     exchanged = np.where(np.isnan(demand.exchange_days), demand.whole_days, demand.exchange_days)
     share = demand.exchanged_frac
     return np.asarray((1.0 - share) * demand.whole_days + share * exchanged)
+
+
+def best_days(demand: Demand) -> Floats:
+    """Return the expected days away by slot and kind if the shelf were never empty, shape (slots + 1, 2)."""
+    exchanged = np.where(np.isnan(demand.exchange_days), demand.whole_days, demand.exchange_days)
+    share = np.array(demand.feasible)
+    return np.asarray(exchanged[:, None] * share + demand.whole_days[:, None] * (1.0 - share))

@@ -66,10 +66,10 @@ class ModuleDemand:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class EngineDemand:
-    """Engines of a type away: one mean a period (however well the modules' shelves are filled), their spread, the
-    price.
+    """Engines of a type away: a mean for each period (with the modules' shelves full), their spread, the price.
 
     ``weight``: what part of all exchanges falls in each period, against an even one; the modules' engines follow it.
+    ``taken``: spares that fill positions for good, by period. ``share``: weight of each period in the averages.
     """
 
     engine_type: str
@@ -77,14 +77,30 @@ class EngineDemand:
     price_usd: float
     spread: float = 1.0
     weight: Floats | None = None
+    taken: Counts | None = None
+    share: Floats | None = None
     held: int = 0
 
     def cover(self, added: Floats, most: int) -> Cover:
-        """Return cover and mean shortage of 0 … ``most`` engines, averaged over the periods; shape (added, most +
-        1)."""
+        """Return cover and mean shortage of 0 … ``most`` engines over the periods, shape (added, most + 1)."""
+        found = self.by_period(added, most)
+        share = np.full(self.means.size, 1.0 / self.means.size) if self.share is None else self.share
+        return Cover(np.tensordot(found.cover_frac, share, (1, 0)), np.tensordot(found.short_mean, share, (1, 0)))
+
+    def by_period(self, added: Floats, most: int) -> Cover:
+        """Return the same for each period, shape (added, periods, most + 1)."""
         weight = np.ones(self.means.size) if self.weight is None else self.weight
-        found = covers(self.means + added[:, None] * weight, most, spread=self.spread)
-        return Cover(found.cover_frac.mean(axis=1), found.short_mean.mean(axis=1))
+        means = self.means + added[:, None] * weight
+        if self.taken is None or not self.taken.any():
+            return covers(means, most, spread=self.spread)
+        freed = max(0, -int(self.taken.min()))
+        found = covers(means, most + freed, spread=self.spread)
+        stock = np.arange(most + 1) - self.taken[:, None]  # what is left of 0 … most spares, shape (periods, most + 1)
+        at = np.broadcast_to(np.maximum(stock, 0), (added.size, *stock.shape))
+        below = np.take_along_axis(found.cover_frac, at, axis=2)
+        short = np.take_along_axis(found.short_mean, at, axis=2)
+        # spares that are owed leave positions open for good
+        return Cover(np.where(stock < 0, 0.0, below), short + np.maximum(-stock, 0))
 
 
 class Holding(NamedTuple):
@@ -138,7 +154,8 @@ def efficient_holdings(
 def _most_engines(engine: EngineDemand, added: float, budget_usd: float, floor: int) -> int:
     weight = 1.0 if engine.weight is None else float(engine.weight.max(initial=1.0))
     away = Away(float(engine.means.max(initial=0.0)) + added * weight, engine.spread)
-    return max(floor, min(enough(away), int(budget_usd / engine.price_usd + 1e-9)))
+    taken = 0 if engine.taken is None else max(0, int(engine.taken.max()))
+    return max(floor, min(enough(away) + taken, int(budget_usd / engine.price_usd + 1e-9)))
 
 
 def _undominated(

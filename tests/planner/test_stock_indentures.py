@@ -107,3 +107,19 @@ def test_targets_and_stocks_that_cannot_be_are_refused() -> None:
         cheapest_for(curve, 1.0)
     with pytest.raises(RequestError, match="numbers from 0"):
         holding(ENGINE, MODULES, engines=-1, stocks=(0, 0))
+
+
+def test_spares_that_are_owed_are_taken_off_the_stock_of_their_period() -> None:
+    """Two periods; in the second one spare fills a position for good: its cover is that of one spare fewer."""
+    engine = EngineDemand(engine_type="N", means=np.array([2.0, 2.0]), price_usd=1.0, taken=np.array([0, 1]))
+    found = engine.cover(np.zeros(1), 5)
+    plain = cover(Away(2.0), 5)
+    assert found.cover_frac[0, 3] == pytest.approx((plain.cover_frac[3] + plain.cover_frac[2]) / 2)
+    assert found.cover_frac[0, 0] == pytest.approx(plain.cover_frac[0] / 2)
+    assert found.short_mean[0, 0] == pytest.approx((2.0 + 3.0) / 2)
+
+
+def test_engines_that_are_freed_add_to_the_stock_of_their_period() -> None:
+    engine = EngineDemand(engine_type="N", means=np.array([2.0]), price_usd=1.0, taken=np.array([-2]))
+    found = engine.cover(np.zeros(1), 3)
+    assert found.cover_frac[0] == pytest.approx(cover(Away(2.0), 5).cover_frac[2:])
