@@ -96,7 +96,8 @@ def _tables_of(path: Path, book: Any, data: bytes) -> Book:
                 strangers.append(name)
             continue
         file = f"{path.name} sheet {name}"
-        sheet = _sheet(path, file, name, book[name].iter_rows(max_col=MOST_COLUMNS + 1, values_only=True))
+        book[name].reset_dimensions()  # what the file claims of its size is not believed
+        sheet = _sheet(path, file, name, book[name].iter_rows(values_only=True))
         sheets.append(sheet[0])
         numbers += [(file, name, row, column, text) for row, column, text in sheet[1]]
     return Book(sheets, strangers, numbers, data)
@@ -114,6 +115,10 @@ def _sheet(
     for number, values in enumerate(rows, start=1):
         if number > MOST_ROWS + 1:
             raise _refused(path, f"more than {MOST_ROWS:,} rows in sheet {name}")
+        if not values:
+            continue
+        if len(values) > MOST_COLUMNS:
+            raise _refused(path, f"more than {MOST_COLUMNS} columns in sheet {name}")
         texts = [_text(value) for value in values]
         while texts and not texts[-1]:
             texts.pop()
@@ -123,8 +128,6 @@ def _sheet(
             headings = tuple(texts)
             kinds = {column.name for column in TABLES[name].columns if column.kind == "serial"}
             serial_at = [i for i, heading in enumerate(headings) if heading.strip() in kinds]
-            if len(headings) > MOST_COLUMNS:
-                raise _refused(path, f"more than {MOST_COLUMNS} columns in sheet {name}")
             continue
         texts += [""] * (len(headings) - len(texts))
         for i in serial_at:
@@ -212,7 +215,8 @@ def _write(page: Any, r: int, i: int, cell: str, column: Column | None, day: Any
             value = float(cell)
         except ValueError:
             value = float("nan")
-        if _text(value) == cell and abs(value) < 1e15:
+        # a workbook holds 16 digits: what needs more stays text
+        if _text(float(f"{value:.16G}")) == cell and abs(value) < 1e15:
             page.write_number(r, i, value)
             return
     if kind == "date":

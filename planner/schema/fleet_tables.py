@@ -270,8 +270,16 @@ _TABLES: tuple[Table, ...] = (
                 "age at the start, on the clock of the hazard",
                 required=True,
                 high=500000,
+                example="0",
             ),
-            integer("cycles_at_removal", "Cycles at removal", "age at the end, or now", required=True, high=500000),
+            integer(
+                "cycles_at_removal",
+                "Cycles at removal",
+                "age at the end, or now",
+                required=True,
+                high=500000,
+                example="6200",
+            ),
             integer(
                 "cycles_last_seen_good",
                 "Cycles last seen good",
