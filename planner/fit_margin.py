@@ -8,13 +8,14 @@ f and g carry what is known to make this engine wear faster than the reference (
 is the wear table's, w fades from 1 at each wash by its half-life and does not stack, and a step is a lasting change
 between two readings. Noise is normal with outliers: reweighted least squares with the bisquare (Beaton and Tukey,
 *Technometrics* 16, 1974) started from Huber's weights, at a noise level that is known or pooled, so that the answer
-does not depend on where it starts. Rate, early loss and gain have a normal prior, which is how an engine with few readings
-borrows from its type (planner/fit_margin_pool.py); the level has none.
+does not depend on where it starts. Rate, early loss and gain have a normal prior, which is how an engine with few
+readings borrows from its type (planner/fit_margin_pool.py); the level has none.
 """
 
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from typing import NamedTuple
 
 import numpy as np
@@ -26,10 +27,15 @@ POOLED = ("rate", "early", "gain")
 LEVEL, RATE, EARLY, GAIN = range(4)
 # Tuning constants for 95 % efficiency under normal noise (Huber, *Robust Statistics*, 1981; Beaton and Tukey, 1974).
 HUBER, BISQUARE = 1.345, 4.685
+LEAST_TO_REJECT = 8
+MOST_ROUNDS = 15
 # A reading whose bisquare weight is below this stands more than four deviations off.
 OUTLIER_WEIGHT = 0.07
 # A step is known only to be no more than tens of degrees; this keeps a step without readings after it from floating.
 STEP_SPREAD_DEGC = 30.0
+# A median absolute deviation tells as much of the noise as a standard deviation of so many fewer differences (Huber,
+# *Robust Statistics*, 1981); the believed noise counts as so many.
+MEDIAN_EFFICIENCY, NOISE_BELIEF = 0.37, 10.0
 # Half-width of a normal's central 95 %.
 Z95 = 1.959963984540054
 
@@ -134,20 +140,33 @@ def bisquare_weights(residuals: Array) -> Array:
 def settled(rows: Array, margin: Array, *, noise: float, prior: tuple[Array, Array], gentle: bool = False) -> Array:
     """Return the readings' weights once reweighting has settled; ``gentle`` stops at Huber's, which keep every reading.
 
-    Should the bisquare throw away more than half of the readings, Huber's weights stand.
+    Huber's weights stand too where there are too few readings to say which one is wrong, and should the bisquare throw
+    away more than half of them.
     """
-    weights = np.ones_like(margin)
-    for _ in range(12):
+    hubers = _reweighted(rows, margin, np.ones_like(margin), huber_weights, noise=noise, prior=prior)
+    if gentle or len(margin) < LEAST_TO_REJECT:
+        return hubers
+    weights = _reweighted(rows, margin, hubers, bisquare_weights, noise=noise, prior=prior)
+    return weights if weights.sum() >= 0.5 * len(margin) else hubers
+
+
+def _reweighted(
+    rows: Array,
+    margin: Array,
+    weights: Array,
+    law: Callable[[Array], Array],
+    *,
+    noise: float,
+    prior: tuple[Array, Array],
+) -> Array:
+    """Return the weights after reweighting until they hardly move."""
+    for _ in range(MOST_ROUNDS):
         residuals = (margin - rows @ solve(rows, margin, weights, noise=noise, prior=prior)) / noise
-        weights = huber_weights(residuals)
-    if gentle:
-        return weights
-    hubers = weights
-    for _ in range(12):
-        residuals = (margin - rows @ solve(rows, margin, weights, noise=noise, prior=prior)) / noise
-        weights = bisquare_weights(residuals)
-        if weights.sum() < 0.5 * len(margin):
-            return hubers
+        moved = law(residuals)
+        change = float(np.max(np.abs(moved - weights)))
+        weights = moved
+        if change < 1e-3:
+            break
     return weights
 
 
@@ -182,9 +201,9 @@ def information(fit: MarginFit) -> tuple[Array, Array]:
     )
 
 
-def noise_of(stretches: list[Stretch], *, otherwise: float, least: int = 12) -> float:
+def noise_of(stretches: list[Stretch], *, believed: float) -> float:
     """Return the noise of one reading in degC from the differences of neighbours, robust against trends, steps and
-    outliers; ``otherwise`` when there are fewer than ``least`` differences."""
+    outliers, and drawn to what is believed of it where the differences are few."""
     found = []
     for stretch in stretches:
         steps = np.diff(stretch.margin_degC)
@@ -193,8 +212,10 @@ def noise_of(stretches: list[Stretch], *, otherwise: float, least: int = 12) -> 
             quiet &= ~((stretch.cycles[:-1] < cycles) & (cycles <= stretch.cycles[1:]))
         if quiet.sum() >= 3:
             found.append(steps[quiet] - np.median(steps[quiet]))
-    if sum(map(len, found)) < least:
-        return otherwise
+    if not found:
+        return believed
+    every = np.concatenate(found)
     # 1.4826: a normal's deviation from its median absolute deviation; root 2: a difference holds two readings
-    spread = 1.4826 * float(np.median(np.abs(np.concatenate(found)))) / math.sqrt(2.0)
-    return max(0.05, spread)
+    spread = 1.4826 * float(np.median(np.abs(every))) / math.sqrt(2.0)
+    own = MEDIAN_EFFICIENCY * len(every)
+    return max(0.05, math.sqrt((own * spread**2 + NOISE_BELIEF * believed**2) / (own + NOISE_BELIEF)))

@@ -13,7 +13,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from planner.fit_margin import Array, MarginFit, Prior, Stretch, fit_stretch, information, noise_of
+from planner.fit_margin import Array, MarginFit, Prior, Stretch, fit_stretch, information
 from planner.fit_margin_steps import found_steps
 
 # Deviations between engines start from a fifth of the mean and are never taken below a fiftieth of it.
@@ -76,21 +76,22 @@ def pooled_prior(precisions: Array, sides: Array, belief: Belief, *, rounds: int
 
 
 def pool(stretches: list[Stretch], belief: Belief, *, noise_degC: float) -> Pooled:
-    """Return the fits of a group of stretches that wear alike; ``noise_degC`` stands in where they are too few to say.
+    """Return the fits of a group of stretches that wear alike, readings having so much noise.
 
     Steps are looked for again each time the type's prior has become narrower, since a doubtful step shows best against
     a rate that is known.
     """
-    noise = noise_of(stretches, otherwise=noise_degC)
     prior = wide_prior(belief)
     fits: list[MarginFit] = []
     for _ in range(3):
         fits = [
-            fit_stretch(one, prior, noise_degC=noise, steps=found_steps(one, prior, noise_degC=noise))
+            fit_stretch(one, prior, noise_degC=noise_degC, steps=found_steps(one, prior, noise_degC=noise_degC))
             for one in stretches
         ]
         told = [information(fit) for fit in fits]
         prior = pooled_prior(np.array([j for j, _ in told]), np.array([h for _, h in told]), belief)
     known = [tuple(step for step in fit.steps if step not in fit.stretch.known_steps) for fit in fits]
-    fits = [fit_stretch(one, prior, noise_degC=noise, steps=steps) for one, steps in zip(stretches, known, strict=True)]
-    return Pooled(fits, prior, noise)
+    fits = [
+        fit_stretch(one, prior, noise_degC=noise_degC, steps=steps) for one, steps in zip(stretches, known, strict=True)
+    ]
+    return Pooled(fits, prior, noise_degC)

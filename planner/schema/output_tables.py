@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from planner.schema.column import Table, choice, date, flag, integer, number, serial, text
-from planner.schema.engine_tables import MODULE, TYPE
+from planner.schema.engine_tables import TYPE
 
 _TABLES: tuple[Table, ...] = (
     Table(
@@ -115,17 +115,6 @@ _TABLES: tuple[Table, ...] = (
             date("date_reached", "Date reached", "at planned use with the season"),
             number("value_left_usd", "Value left", "at the part's price"),
             text("owner", "Owner", "who owns it"),
-        ),
-    ),
-    Table(
-        name="hazards_fitted",
-        row="one fitted hazard",
-        columns=(
-            TYPE,
-            MODULE,
-            text("cause", "Cause", "of removal"),
-            number("shape", "Shape", "Weibull"),
-            number("scale", "Scale", "Weibull"),
         ),
     ),
 )

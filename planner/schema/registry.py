@@ -5,6 +5,7 @@ from __future__ import annotations
 from planner.schema import (
     engine_outputs,
     engine_tables,
+    fit_outputs,
     fleet_tables,
     output_tables,
     plan_outputs,
@@ -27,6 +28,7 @@ TABLES: dict[str, Table] = {
 OUTPUTS: dict[str, Table] = {
     **output_tables.TABLES,
     **engine_outputs.TABLES,
+    **fit_outputs.TABLES,
     **plan_outputs.TABLES,
     **record_outputs.TABLES,
     **saved_outputs.TABLES,

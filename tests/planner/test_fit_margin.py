@@ -89,8 +89,9 @@ def test_outliers_hardly_move_a_trend() -> None:
 
 def test_noise_is_told_from_trend_steps_and_outliers() -> None:
     stretches, _ = fleet(3, steps=0.5)
-    assert noise_of(stretches, otherwise=9.0) == pytest.approx(2.5, rel=0.2)
-    assert noise_of(stretches[:2], otherwise=9.0) == 9.0
+    assert noise_of(stretches, believed=2.5) == pytest.approx(2.5, rel=0.15)
+    assert noise_of(stretches, believed=5.0) == pytest.approx(2.5, rel=0.3)
+    assert noise_of(stretches[:2], believed=5.0) == 5.0
 
 
 @pytest.mark.parametrize("size", [-9.0, 9.0])
