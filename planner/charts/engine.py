@@ -1,4 +1,4 @@
-"""Charts of an engine type: what a point costs, margin against ambient, the worth of work, margin trends."""
+"""Charts of an engine type: what a point costs, margin against ambient, the worth of work."""
 
 from __future__ import annotations
 
@@ -7,7 +7,7 @@ from typing import Any
 import altair as alt
 import pandas as pd
 
-from planner.charts.palette import DASHES, NEUTRAL, SERIES, SHAPES, STOP
+from planner.charts.palette import DASHES, NEUTRAL, SERIES, STOP
 
 Rows = list[dict[str, Any]]
 
@@ -134,45 +134,3 @@ def worth(rows: Rows) -> alt.HConcatChart:
     return alt.hconcat(
         bars("degrees", "degC regained for 1 M USD"), bars("fuel", "fuel saved a year for 1 M USD, thousand USD")
     )
-
-
-def trend(rows: Rows, *, removal_margin_degC: float) -> alt.LayerChart:
-    """Return one engine's readings, fit, forecast and band by date; what the fit gave little weight is a cross."""
-    frame = pd.DataFrame(rows)
-    frame["date"] = pd.to_datetime(frame["date"])
-    frame["reading"] = ["set aside" if weight is not None and weight < 0.5 else "reading" for weight in frame["weight"]]
-    base = alt.Chart(frame).encode(x=alt.X("date:T", title=None))
-    band = base.mark_area(opacity=0.25, color=SERIES[0]).encode(
-        y=alt.Y("low:Q", title="hot-day EGT margin, degC"), y2="high:Q"
-    )
-    line = base.mark_line(color=SERIES[0]).encode(y="margin_degC:Q")
-    marks = (
-        base.transform_filter("isValid(datum.reading_degC)")
-        .mark_point(filled=True, size=45)
-        .encode(
-            y="reading_degC:Q",
-            shape=alt.Shape(
-                "reading:N",
-                title=None,
-                scale=alt.Scale(domain=["reading", "set aside"], range=[SHAPES[0], SHAPES[4]]),
-                legend=alt.Legend(orient="bottom"),
-            ),
-            color=alt.Color(
-                "reading:N",
-                title=None,
-                scale=alt.Scale(domain=["reading", "set aside"], range=[SERIES[3], STOP]),
-                legend=alt.Legend(orient="bottom"),
-            ),
-            tooltip=[
-                alt.Tooltip("date:T"),
-                alt.Tooltip("reading_degC:Q", title="reading, degC", format=".1f"),
-                alt.Tooltip("margin_degC:Q", title="fit, degC", format=".1f"),
-            ],
-        )
-    )
-    threshold = (
-        alt.Chart(pd.DataFrame([{"margin": removal_margin_degC}]))
-        .mark_rule(color=STOP, strokeDash=[4, 3])
-        .encode(y="margin:Q", tooltip=[alt.Tooltip("margin:Q", title="comes off at, degC")])
-    )
-    return alt.layer(band, line, marks, threshold, title="Margin: readings, fit and forecast").properties(height=320)

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import datetime as dt
 from typing import Any
 
 import pytest
@@ -50,16 +49,3 @@ def test_worth_is_a_million_worth_of_each_module() -> None:
     drawn = charts.worth([row, {**row, "module": "gearbox", "regained_degC": 0.0}]).to_dict()
     (rows,) = drawn["datasets"].values()
     assert [(one["module"], one["degrees"], one["fuel"]) for one in rows] == [("HPT", 10.0, 20.0)]
-
-
-def test_a_trend_tells_readings_from_those_set_aside_and_from_the_forecast() -> None:
-    day = dt.date(2026, 7, 1)
-    rows = [
-        {"date": day, "reading_degC": 30.0, "margin_degC": 31.0, "low": 29.0, "high": 33.0, "weight": 1.0},
-        {"date": day, "reading_degC": 12.0, "margin_degC": 30.0, "low": 28.0, "high": 32.0, "weight": 0.1},
-        {"date": day, "reading_degC": None, "margin_degC": 25.0, "low": 20.0, "high": 30.0, "weight": None},
-    ]
-    drawn = charts.trend(rows, removal_margin_degC=5.0).to_dict()
-    table = next(t for t in drawn["datasets"].values() if len(t) == 3)
-    assert [row["reading"] for row in table[:2]] == ["reading", "set aside"]
-    assert len(drawn["layer"]) == 4

@@ -30,6 +30,15 @@ def test_the_page_answers_the_three_questions(monkeypatch: pytest.MonkeyPatch) -
     assert {"module", "component", "egt_K", "egt_K_low", "fuel_cruise_percent"} <= columns
 
 
+def test_the_trend_of_an_engine_can_be_chosen(monkeypatch: pytest.MonkeyPatch) -> None:
+    app = page(monkeypatch, ROOT / "demo_fleet")
+    box = next(one for one in app.selectbox if one.label == "Engine with readings")
+    fitted = next(one.value for one in app.dataframe if "date_p50" in one.value.columns)
+    assert box.value == fitted["engine_serial"].iloc[0]
+    box.set_value(box.options[3]).run()
+    assert not app.exception
+
+
 def test_another_spare_changes_the_answer(monkeypatch: pytest.MonkeyPatch) -> None:
     app = page(monkeypatch, ROOT / "demo_fleet")
     seen = set()

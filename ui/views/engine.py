@@ -7,7 +7,9 @@ from typing import Any
 
 import streamlit as st
 
+from planner import fit
 from planner.charts import engine as charts
+from planner.charts import fit as fit_charts
 from planner.engine_fleet import FleetAnswer, ask
 from planner.fitting import Fitting
 from planner.module_worth import Exchange, spare_on_engine
@@ -22,6 +24,13 @@ from ui.widgets.tables import chart, show
 def _answer(content: str, path: str, engine_type: str) -> FleetAnswer:
     del content  # the key: records that change are computed again
     return ask(Path(path), engine_type=engine_type)
+
+
+@st.cache_data(show_spinner="fitting the readings", max_entries=2)
+def _fitted(content: str, path: str) -> tuple[dict[str, list[dict[str, Any]]], list[str]]:
+    del content  # the key, as above
+    found = fit.ask(Path(path))
+    return {name: found.tables[name] for name in ("margins", "margin_types", "steps", "ahead")}, found.warnings
 
 
 def _percent(row: dict[str, Any]) -> dict[str, Any]:
@@ -102,6 +111,39 @@ def _exchange(row: Exchange) -> None:
     st.text(f"{row.module_off} comes off {row.engine_serial} on {row.tail}, {row.module_on} goes on.")
 
 
+def _trends(fleet: Fleet, name: str) -> None:
+    """Show what the readings say of one engine: fit, steps, forecast; the engines soonest at their margin first."""
+    st.subheader("Margin over time")
+    try:
+        tables, warnings = _fitted(data.inputs(), str(data.fleet_path()))
+    except UserError as error:
+        st.text(str(error))
+        return
+    rows = [row for row in tables["margins"] if row["engine_type"] == name]
+    if not rows:
+        st.info("No engine of this type has readings.")
+        return
+    serial = st.selectbox("Engine with readings", [row["engine_serial"] for row in rows], key="trend-engine")
+    kind = next(row for row in fleet.engine_types if row.engine_type == name)
+    steps = [row for row in tables["steps"] if row["engine_serial"] == serial]
+    chart(
+        fit_charts.trend(
+            [row for row in tables["ahead"] if row["engine_serial"] == serial],
+            steps=steps,
+            removal_margin_degC=kind.removal_margin_degC,
+        ),
+        words="Readings, robust fit and forecast with its 95 % band. A statistic: it defers no inspection.",
+    )
+    if steps:
+        show(steps, name="steps")
+    with st.expander("Fitted margins of every engine"):
+        show(rows, name="fitted-margins", digits=2)
+    with st.expander("Rates of the type"):
+        show([row for row in tables["margin_types"] if row["engine_type"] == name], name="fitted-rates", digits=2)
+        for sentence in warnings:
+            st.text(sentence)
+
+
 st.title("Engine")
 st.write("What a point lost in each module costs in margin and fuel, how sure that is, and what brings it back.")
 
@@ -117,6 +159,7 @@ except UserError as fault:
 _physics(answer, chosen_fleet, chosen)
 _worth(answer)
 _spare(chosen_fleet, chosen)
+_trends(chosen_fleet, chosen)
 with st.expander("Stations of the gas path"):
     show(answer.tables["stations"], name="stations")
 with st.expander("What was assumed"):
