@@ -28,7 +28,7 @@ def trend(ahead: Rows, *, steps: Rows, removal_margin_degC: float, title: str = 
     # the line goes on without a gap: what is carried forward begins at the last fitted point
     last = frame[frame["part"] == "fitted to readings"].tail(1).assign(part="carried forward")
     frame = pd.concat([frame, last]).sort_values("date")
-    x = alt.X("date:T", title="date")
+    x = alt.X("date:T", title="date", axis=alt.Axis(format="%b %Y", labelOverlap=True))
     parts = ["fitted to readings", "carried forward"]
     shade = alt.Color("part:N", title="fit", scale=alt.Scale(domain=parts, range=[SERIES[0], SERIES[1]]))
     dash = alt.StrokeDash("part:N", title="fit", scale=alt.Scale(domain=parts, range=[[1, 0], [6, 3]]))
@@ -85,6 +85,7 @@ def _steps(steps: Rows) -> list[alt.Chart]:
         return []
     frame = pd.DataFrame(steps)
     frame["to_date"] = pd.to_datetime(frame["to_date"])
+    frame["from_date"] = [day.isoformat() for day in frame["from_date"]]
     frame["label"] = [f"step {size:+.0f} degC" for size in frame["size_degC"]]
     rule = (
         alt.Chart(frame)
