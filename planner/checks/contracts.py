@@ -65,11 +65,10 @@ def leased_aircraft_belong_to_their_lessor(facts: Facts) -> Iterator[Fault]:
 def modules_fly_on_engines_of_their_owner(facts: Facts) -> Iterator[Fault]:
     for serial, module in facts.modules.items():
         engine = facts.engines.get(module.engine_serial or "")
-        if engine and module.owner and engine.owner and module.owner != engine.owner:
-            message = (
-                f"{serial} of {module.owner} is in engine {module.engine_serial} of {engine.owner}; it must go back"
-            )
-            yield Fault("modules", module.row, "owner", module.owner, engine.owner, message)
+        if engine and module.owner != engine.owner and None not in (module.owner, engine.owner):
+            whose, other = module.owner or _OPERATOR, engine.owner or _OPERATOR
+            message = f"{serial} of {whose} is in engine {module.engine_serial} of {other}; it must go back"
+            yield Fault("modules", module.row, "owner", module.owner, other, message)
 
 
 def parts_fly_in_modules_of_their_owner(facts: Facts) -> Iterator[Fault]:
