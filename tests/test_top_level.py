@@ -35,8 +35,8 @@ def _tracked() -> list[str]:
 
 def test_the_top_of_the_tree_holds_what_the_design_names_and_nothing_else() -> None:
     tracked = _tracked()
-    assert {name.split("/")[0] for name in tracked if "/" in name} <= FOLDERS
-    assert {name for name in tracked if "/" not in name} <= FILES
+    assert {name.split("/")[0] for name in tracked if "/" in name} == FOLDERS
+    assert {name for name in tracked if "/" not in name} == FILES
 
 
 def test_tests_mirror_the_code() -> None:
