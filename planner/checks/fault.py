@@ -89,9 +89,9 @@ def _problem(rule: Rule, fault: Fault, file: str) -> Problem:
     )
 
 
-def shown(text: str, most: int = 80) -> str:
-    """Return a cell's text as a message may show it: printable and short."""
-    plain = "".join(c if c.isprintable() else "?" for c in text[: most + 1])
+def shown(text: str | None, most: int = 80) -> str:
+    """Return a cell's text as a message may show it: printable and short; blank for a cell that could not be read."""
+    plain = "".join(c if c.isprintable() else "?" for c in (text or "")[: most + 1])
     return plain if len(plain) <= most else plain[:most] + "…"
 
 

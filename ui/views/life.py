@@ -13,6 +13,8 @@ from planner.charts.life import next_limits
 from ui import data
 from ui.widgets.tables import chart, show
 
+_CHART_DAYS = 8 * 365  # further ahead a limit is no news
+
 
 @st.cache_data(show_spinner="counting lives", max_entries=8)
 def _lives(content: str, path: str, at: dt.date) -> dict[str, Any]:
@@ -44,6 +46,7 @@ def _asked(row: dict[str, Any]) -> bool:
     return tail in ("all", row["tail"])
 
 
+until = (at if isinstance(at, dt.date) else as_of) + dt.timedelta(days=_CHART_DAYS)
 parts = [row for row in answer["parts"] if _asked(row) and row["state"] in states]
 engines = [row for row in answer["engines"] if _asked(row) and row["state"] in states]
 hit = [row for row in answer["directives"] if _asked(row)]
@@ -54,11 +57,11 @@ for cell, state in zip(cells, life.STATES, strict=True):
 
 limits, directives, owners, records = st.tabs(["Limits", "Directives", "Owners and places", "Records"])
 with limits:
-    if any(row["date_reached"] is not None for row in parts):
+    if any(row["date_reached"] is not None and row["date_reached"] <= until for row in parts):
         chart(
-            next_limits(parts),
-            words="Each mark is a part; left is soon. At a limit the answer is stop. Dates hold if every aircraft "
-            "flies as planned and nothing is exchanged.",
+            next_limits([row for row in parts if row["date_reached"] is None or row["date_reached"] <= until]),
+            words=f"Each mark is a part that must be off by {until}; left is soon. At a limit the answer is stop. "
+            "Dates hold if every aircraft flies as planned and nothing is exchanged.",
         )
     st.subheader("Engines, weakest first")
     if engines:
