@@ -59,6 +59,7 @@ class Demand(NamedTuple):
     edges: Floats
     positions: tuple[Position, ...]
     rates: Floats
+    whole_rates: Floats
     whole_days: Floats
     exchange_days: Floats
     back_days: Floats
@@ -66,6 +67,7 @@ class Demand(NamedTuple):
     away_now: Floats
     taken: NDArray[np.int64]
     worst_slot: int
+    usable: dict[str, int]
     feasible: tuple[float, float]
     exchanged_frac: float
 
@@ -119,12 +121,14 @@ def _of_type(view: Picture, kind: TypeSpec, strategy: str, edges: Floats, *, exc
     def rates_at(share: float) -> Floats:
         return removal_rates(positions, spares, months, slots=slots, renewing=renewing, exchanged_frac=share)
 
+    whole_rates = rates_at(0.0)
     bare = Demand(
         engine_type=name,
         strategy=strategy,
         edges=edges,
         positions=positions,
-        rates=rates_at(0.0),
+        rates=whole_rates,
+        whole_rates=whole_rates,
         whole_days=np.zeros(slots + 1),
         exchange_days=np.full(slots + 1, math.nan),
         back_days=np.zeros(slots),
@@ -132,11 +136,12 @@ def _of_type(view: Picture, kind: TypeSpec, strategy: str, edges: Floats, *, exc
         away_now=_away_now(view, name, edges),
         taken=_taken(view, name, edges),
         worst_slot=worst,
+        usable=usable_modules(view, kind),
         feasible=_feasible(view, positions, name) if exchanges else (0.0, 0.0),
         exchanged_frac=0.0,
     )
     found = _with_days(view, kind, bare, typical, exchanges=exchanges)
-    share = served_frac(found, kind, usable_modules(view, kind)) if exchanges else 0.0
+    share = served_frac(found, kind) if exchanges else 0.0
     if share > 0.0:
         found = found._replace(rates=rates_at(share), exchanged_frac=share)
         found = _with_days(view, kind, found, typical, exchanges=exchanges)
@@ -176,13 +181,13 @@ def usable_modules(view: Picture, kind: TypeSpec) -> dict[str, int]:
     return found
 
 
-def served_frac(demand: Demand, kind: TypeSpec, held: dict[str, int]) -> float:
-    """Return the share of removals that find the module they ask for on a shelf of so many (Erlang's loss)."""
+def served_frac(demand: Demand, kind: TypeSpec) -> float:
+    """Return the share of removals that find the module they ask for on today's shelf (Erlang's loss)."""
     asked = asked_per_day(demand)
     served = 0.0
     for slot, module in enumerate(kind.modules):
         if asked[slot] > 0.0 and not math.isnan(demand.exchange_days[slot]):
-            lost = erlang_loss(held.get(module.module, 0), float(asked[slot]) * float(demand.back_days[slot]))
+            lost = erlang_loss(demand.usable[module.module], float(asked[slot]) * float(demand.back_days[slot]))
             served += asked[slot] * (1.0 - lost)
     total = float(demand.per_day().sum())
     return served / total if total > 0.0 else 0.0
@@ -241,6 +246,12 @@ def _typical(view: Picture, positions: tuple[Position, ...]) -> Typical | None:
         return None
     middle = known[len(known) // 2]
     return view.engines[middle.engine_serial], middle.tail
+
+
+def typical_engine(view: Picture, kind: TypeSpec) -> Typical | None:
+    """Return the engine in the middle of its type by the day of its first planned cause, and its tail; None
+    without."""
+    return _typical(view, _positions(view, kind, exchanges=False))
 
 
 def _renewing(view: Picture, kind: TypeSpec, typical: Typical | None) -> frozenset[int]:

@@ -8,6 +8,7 @@ from typing import TypeVar
 
 from sim.errors import RequestError
 from sim.fleet import Engine, Fleet, Holding, Module, Part, Strategy
+from sim.wear import Slope, cycles_to
 
 Spare = TypeVar("Spare", Engine, Module)
 
@@ -87,12 +88,13 @@ def stock_held(fleet: Fleet) -> dict[tuple[str, str], int]:
 def with_stock(fleet: Fleet, stock: tuple[Holding, ...]) -> Fleet:
     """Return the fleet with so many spares of each item named; items that are not named stay as they are.
 
-    Spares are taken away from the shelf first, then from shops, the last serial first; what is added is at half of its
-    life (parts at half of their limits, modules at half of their intervals), so that stock is neither new nor worn out.
+    Spares are taken away from the shelf first, then from shops, the last serial first; what is added is at half
+    of its life (parts at half of their limits, modules at half of their intervals or of the run that the margin
+    allows, if that is shorter), so that stock is neither new nor worn out.
     """
     wanted: dict[tuple[str, str], int] = {}
     for row in stock:
-        _check_item(fleet, row)
+        check_item(fleet, row)
         key = (row.engine_type, row.module)
         wanted[key] = wanted.get(key, 0) + row.count  # bases add up
     for (kind, item), count in sorted(wanted.items()):
@@ -104,7 +106,8 @@ def with_stock(fleet: Fleet, stock: tuple[Holding, ...]) -> Fleet:
     return fleet
 
 
-def _check_item(fleet: Fleet, row: Holding) -> None:
+def check_item(fleet: Fleet, row: Holding) -> None:
+    """Raise RequestError for a type or item that the fleet does not have, or a count below zero."""
     kinds = [t.engine_type for t in fleet.engine_types]
     if row.engine_type not in kinds:
         raise RequestError("holding", row.engine_type, f"an engine type: {', '.join(kinds)}")
@@ -163,7 +166,7 @@ def _add_module(fleet: Fleet, kind: str, name: str, number: int, engine_serial: 
         ),
         0,
     )
-    half = interval // 2
+    half = int(min(float(interval), _margin_run_cycles(fleet, kind))) // 2
     hours_per_cycle = _hours_per_cycle(fleet, kind)
     rating = _common_rating(fleet, kind)
     module = Module(
@@ -202,6 +205,23 @@ def _add_module(fleet: Fleet, kind: str, name: str, number: int, engine_serial: 
             )
         )
     return replace(fleet, modules=(*fleet.modules, module), parts=(*fleet.parts, *parts))
+
+
+def _margin_run_cycles(fleet: Fleet, kind: str) -> float:
+    """Return the cycles from a restoration to the removal threshold at the rating and on the bases that a type flies
+    (inf where wear is not given)."""
+    row = next(t for t in fleet.engine_types if t.engine_type == kind)
+    rating = _common_rating(fleet, kind)
+    new = next(r.new_margin_degC for r in fleet.ratings if (r.engine_type, r.rating) == (kind, rating))
+    wear = [w for w in fleet.wear if (w.engine_type, w.rating) == (kind, rating)]
+    bases = {b.base: b.environment for b in fleet.bases}
+    flown = [bases.get(a.base, 1.0) for a in fleet.aircraft if a.engine_type == kind]
+    environment = sum(flown) / len(flown) if flown else 1.0
+    hours = _hours_per_cycle(fleet, kind)
+    steady = sum(w.loss_degC_per_1000_cycles + w.loss_degC_per_1000_hours * hours for w in wear) / 1000.0
+    early = tuple((environment * w.early_loss_degC, w.early_scale_cycles) for w in wear)
+    left = new - row.removal_margin_degC - sum(w.unrecoverable_degC for w in wear)
+    return cycles_to(Slope(early, environment * steady), left)
 
 
 def _free_serial(taken: set[str], stem: str, number: int) -> str:

@@ -19,7 +19,7 @@ from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import gammaln, xlog1py, xlogy
+from scipy.special import gammaln
 
 from sim.errors import RequestError
 
@@ -89,12 +89,21 @@ def _mixture(mean: Floats, spread: float) -> tuple[Floats, Floats, Floats]:
 
 
 def _binomials(n: Floats, p: Floats, most: int) -> Floats:
-    """Return P(X = x) of binomial laws for x = 0 … ``most``, shape (most + 1, laws)."""
-    x = np.arange(most + 1)[:, None]
-    inside = np.minimum(x, n)
-    ways = gammaln(n + 1.0) - gammaln(inside + 1.0) - gammaln(n - inside + 1.0)
-    log_p = ways + xlogy(inside, p) + xlog1py(n - inside, -p)
-    return np.asarray(np.where(x <= n, np.exp(log_p), 0.0))
+    """Return P(X = x) of binomial laws for x = 0 … ``most``, shape (most + 1, laws).
+
+    By the recurrence ``p(x + 1) = p(x) (n - x) / (x + 1) p / (1 - p)``, counted from the end where p is above a half.
+    """
+    flip = p > 0.5
+    q = np.where(flip, 1.0 - p, p)
+    odds = q / (1.0 - q)
+    top = int(max(most, n.max(initial=0.0)))
+    law = np.zeros((top + 1, n.size))
+    law[0] = np.exp(n * np.log1p(-q))
+    for x in range(top):
+        law[x + 1] = law[x] * np.maximum(0.0, n - x) / (x + 1.0) * odds
+    wanted = np.arange(most + 1)[:, None]
+    at = np.where(flip, n - wanted, wanted).astype(np.int64)
+    return np.where(at >= 0, np.take_along_axis(law, np.maximum(at, 0), axis=0), 0.0)
 
 
 def cover(away: Away, most: int) -> Cover:

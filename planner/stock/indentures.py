@@ -15,7 +15,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import NamedTuple
+from typing import Literal, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -125,9 +125,15 @@ def holding(engine: EngineDemand, modules: Sequence[ModuleDemand], *, engines: i
 
 
 def efficient_holdings(
-    engine: EngineDemand, modules: Sequence[ModuleDemand], *, budget_usd: float, keep: bool = False
+    engine: EngineDemand,
+    modules: Sequence[ModuleDemand],
+    *,
+    budget_usd: float,
+    keep: bool = False,
+    by: Literal["cover", "short"] = "cover",
 ) -> tuple[Holding, ...]:
-    """Return every holding that costs at most the budget and that no cheaper one beats in cover, cheapest first.
+    """Return every holding that costs at most the budget and that no cheaper one beats in cover (or in engines short,
+    as ``by`` says), cheapest first.
 
     ``keep``: nothing that is held is given up. Raises RequestError for a budget below what is held then.
     """
@@ -147,7 +153,7 @@ def efficient_holdings(
     choices = efficient(items, budget=budget_usd - floor * engine.price_usd)
     most = _most_engines(engine, float(choices.loss.max()), budget_usd, floor)
     return _undominated(
-        engine, choices.cost, choices.loss, choices.stocks, floor=floor, most=most, budget_usd=budget_usd
+        engine, choices.cost, choices.loss, choices.stocks, floor=floor, most=most, budget_usd=budget_usd, by=by
     )
 
 
@@ -159,17 +165,28 @@ def _most_engines(engine: EngineDemand, added: float, budget_usd: float, floor: 
 
 
 def _undominated(
-    engine: EngineDemand, costs: Floats, added: Floats, stocks: Counts, *, floor: int, most: int, budget_usd: float
+    engine: EngineDemand,
+    costs: Floats,
+    added: Floats,
+    stocks: Counts,
+    *,
+    floor: int,
+    most: int,
+    budget_usd: float,
+    by: str,
 ) -> tuple[Holding, ...]:
-    """Return the holdings that no cheaper or equally dear one beats in cover (of equals, the one shorter least)."""
+    """Return the holdings that no cheaper or equally dear one beats in what counts (of equals, the better in the
+    other)."""
     found = engine.cover(added, most)
     number = np.arange(floor, most + 1)
     price = costs[:, None] + number * engine.price_usd
     below, short = found.cover_frac[:, floor:], found.short_mean[:, floor:]
     payable = np.flatnonzero(price.ravel() <= budget_usd * (1.0 + 1e-12))
-    order = payable[np.lexsort((short.ravel()[payable], -below.ravel()[payable], price.ravel()[payable]))]
-    best_before = np.concatenate([[-1.0], np.maximum.accumulate(below.ravel()[order])[:-1]])
-    kept = order[below.ravel()[order] > best_before + _SAME_COVER]
+    worse = (1.0 - below if by == "cover" else short).ravel()
+    other = (short if by == "cover" else 1.0 - below).ravel()
+    order = payable[np.lexsort((other[payable], worse[payable], price.ravel()[payable]))]
+    best_before = np.concatenate([[np.inf], np.minimum.accumulate(worse[order])[:-1]])
+    kept = order[worse[order] < best_before - _SAME_COVER]
     return tuple(
         Holding(
             int(number[one % number.size]),
