@@ -79,7 +79,7 @@ def _next_opening(problem: Openings, point: int, until: NDArray[np.int64], resto
     return last
 
 
-def _lost_degC(problem: Openings, point: int, restored: NDArray[np.bool_]) -> NDArray[np.float64]:  # noqa: N802
+def _lost_degC(problem: Openings, point: int, restored: NDArray[np.bool_]) -> NDArray[np.float64]:
     """Return each module's loss at a point, from its last restoration before that point."""
     lost = problem.first_loss_degC[:, point].copy()
     for module in range(lost.size):

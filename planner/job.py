@@ -38,8 +38,8 @@ class RunRow(NamedTuple):
     """The figures of one run of one strategy.
 
     ``costs``: present USD, shape (years, engine types, lines of sim.pricing.LINES). ``sweep``: (horizons, 2): total on
-    the consumption basis and cash. ``removals``: (engine types, causes). ``days_lost``: by REASONS. Hours and cycles are
-    engine hours and engine cycles flown.
+    the consumption basis and cash. ``removals``: (engine types, causes). ``days_lost``: by REASONS. Hours and cycles
+    are engine hours and engine cycles flown.
     """
 
     total_usd: float
@@ -174,20 +174,20 @@ def _facts(ready: Setup, log: Log) -> dict[str, Any]:
             leased += 1.0
         elif kind == _ON:
             exchanges += 1.0
-    return dict(
-        hours=hours,
-        cycles=cycles,
-        days_lost=lost,
-        removals=removals,
-        on_wing_hours=on_wing / ended if ended else 0.0,
-        stub_cycles=stub / replaced if replaced else 0.0,
-        parts_replaced=replaced,
-        shortages=shortages,
-        leased_in=leased,
-        exchanges=exchanges,
-        fuel_kg=fuel,
-        co2_kg=fuel * ready.fleet.settings.co2_kg_per_kg_fuel,
-    )
+    return {
+        "hours": hours,
+        "cycles": cycles,
+        "days_lost": lost,
+        "removals": removals,
+        "on_wing_hours": on_wing / ended if ended else 0.0,
+        "stub_cycles": stub / replaced if replaced else 0.0,
+        "parts_replaced": replaced,
+        "shortages": shortages,
+        "leased_in": leased,
+        "exchanges": exchanges,
+        "fuel_kg": fuel,
+        "co2_kg": fuel * ready.fleet.settings.co2_kg_per_kg_fuel,
+    }
 
 
 def costs_by_line(row: RunRow) -> NDArray[np.float64]:

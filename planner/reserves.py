@@ -1,8 +1,8 @@
 """Reserve accounts of leases: paid by hour and cycle, drawn on qualifying visits, the balance a claim at the end.
 
-A draw is the least of the balance on the day and the cost that qualifies: an account for ``engine`` pays any work of the
-engine's visits, one for ``parts`` the parts, one with a module's name that module's restorations (common practice, no
-source). Balances are sequential, so this is a short loop over visits, in order of day.
+A draw is the least of the balance on the day and the cost that qualifies: an account for ``engine`` pays any work of
+the engine's visits, one for ``parts`` the parts, one with a module's name that module's restorations (common
+practice, no source). Balances are sequential, so this is a short loop over visits, in order of day.
 """
 
 from __future__ import annotations

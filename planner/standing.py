@@ -81,9 +81,8 @@ def _state(fleet: Fleet, left: int, margin: float) -> str:
 def _rank(fleet: Fleet, row: dict[str, Any]) -> float:
     """The weaker of life and margin, each against what counts as weak."""
     settings = fleet.settings
-    return min(
-        row["cycles_left"] / max(1, settings.weak_cycles), row["margin_degC"] / max(0.1, settings.weak_margin_degC)
-    )
+    life = float(row["cycles_left"]) / max(1, settings.weak_cycles)
+    return min(life, float(row["margin_degC"]) / max(0.1, settings.weak_margin_degC))
 
 
 def spare_modules(fleet: Fleet) -> Rows:

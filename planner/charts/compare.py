@@ -99,7 +99,10 @@ def downtime_by_reason(downtime: Rows) -> alt.Chart:
 def removals_by_cause(removals: Rows) -> alt.Chart:
     """Return removals by cause, grouped by strategy, over all types."""
     frame = pd.DataFrame(removals).groupby(["strategy", "cause"], sort=False, as_index=False)["removals_mean"].sum()
-    rows = frame.to_dict("records")
+    rows: Rows = [
+        {"strategy": strategy, "cause": cause, "removals_mean": count}
+        for strategy, cause, count in frame.itertuples(index=False)
+    ]
     return _grouped(rows, "cause", "removals_mean", "Removals by cause", "removals over the horizon")
 
 

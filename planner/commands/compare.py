@@ -33,7 +33,6 @@ import click
 @click.option("--build-goal", type=int, help="Build goal in cycles, for all strategies.")
 @click.option("--turn-time-factor", type=float, default=1.0, show_default=True, help="Factor on every turn time.")
 @click.option("--fuel-price", type=float, help="Jet fuel, USD/kg.")
-@click.option("--plan", type=click.Path(path_type=Path), help="A swap plan (folder) to compare against no plan.")
 @click.option("--story", metavar="SERIAL", help="Print the history of one engine, module, part or tail in run 0.")
 @click.option("--no-save", is_flag=True, help="Neither read nor write saved runs.")
 @click.option(
@@ -42,7 +41,7 @@ import click
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON object.")
 def command(**asked: Any) -> None:
     """Compare strategies on the FLEET (a folder or workbook): cost, downtime, and whether the runs suffice."""
-    from planner.compare_text import print_comparison, print_story
+    from planner.commands.compare_output import print_comparison, print_story
     from planner.comparing import ask
 
     if asked["story"]:

@@ -28,8 +28,8 @@ fourth.metric("Spare engines ready", sum(row["place"] in ("spare", "leased in") 
 if wing:
     chart(
         engines_left(wing),
-        words="Each mark is an engine on the wing; down and left is weak. Life is counted at the rating of its aircraft, "
-        "rounded down; the margin is what the records say of its modules.",
+        words="Each mark is an engine on the wing; down and left is weak. Life is counted at the rating of its "
+        "aircraft, rounded down; the margin is what the records say of its modules.",
     )
 st.subheader("Engines")
 show(rows, name="engines", height=420)
