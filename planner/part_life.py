@@ -50,9 +50,10 @@ def _clocks(records: Records) -> tuple[set[str], set[str]]:
     return {number for _, number, hours, _ in rows if hours}, {number for _, number, _, days in rows if days}
 
 
-def flown_by_part(records: Records) -> list[PartLife]:
-    """Return the life of each row of ``parts``, in their order."""
-    history = history_by_part(records)
+def flown_by_part(records: Records, history: dict[str, dict[str, int]] | None = None) -> list[PartLife]:
+    """Return the life of each row of ``parts``, in their order; ``history`` where it is known already."""
+    if history is None:
+        history = history_by_part(records)
     lowest = lowest_ratings(records)
     with_history = records.given("part_history")
     in_hours, in_days = _clocks(records)

@@ -7,7 +7,7 @@ from collections.abc import Iterable
 from functools import cached_property
 from typing import Any, NamedTuple
 
-from planner.part_life import PartLife, flown_by_part
+from planner.part_life import PartLife, flown_by_part, history_by_part
 from planner.records import Records
 from planner.settings import as_of
 from sim import life
@@ -209,7 +209,12 @@ class Facts:
 
     @cached_property
     def lives(self) -> list[PartLife]:
-        return flown_by_part(self.records)
+        return flown_by_part(self.records, self.history)
+
+    @cached_property
+    def history(self) -> dict[str, dict[str, int]]:
+        """Cycles by rating for each part serial, as its history has them."""
+        return history_by_part(self.records)
 
     def rating_of(self, module_serial: str, engine_type: str) -> str:
         """Return the rating at which a module flies; off a tail the one with the most thrust."""

@@ -8,7 +8,6 @@ from itertools import pairwise
 
 from planner.checks.facts import Facts
 from planner.checks.fault import Fault, Rule, stops, warns
-from planner.part_life import history_by_part
 
 _DAY = dt.timedelta(days=1)
 
@@ -16,7 +15,7 @@ _DAY = dt.timedelta(days=1)
 def history_adds_up_to_cycles_since_new(facts: Facts) -> Iterator[Fault]:
     if not facts.told("part_history"):
         return
-    history = history_by_part(facts.records)
+    history = facts.history
     for row, serial, cycles in facts.records["parts"].pick("part_serial", "cycles_since_new"):
         total = sum(history.get(serial, {}).values())
         if cycles is None or cycles == total:

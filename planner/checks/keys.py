@@ -125,12 +125,11 @@ def serials_do_not_look_alike(facts: Facts) -> Iterator[Fault]:
         known: dict[str, str] = {}
         seen: set[str] = set()
         for table, column in columns:
-            first: dict[str, int] = {}
-            for row, text in facts.records[table].pick(column):
-                if text:
-                    first.setdefault(text, row)
-            for text, row in first.items():
-                if text in seen:
+            rows = facts.records[table]
+            # read backwards, so that the first row of each text stays
+            first = dict(zip(reversed(rows[column]), reversed(rows.numbers), strict=True))
+            for text, row in sorted(first.items(), key=lambda item: item[1]):
+                if not text or text in seen:
                     continue
                 seen.add(text)
                 look = look_of(text)
