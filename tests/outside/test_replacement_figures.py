@@ -26,7 +26,7 @@ TEN_PARTS = SharedVisits(
     ("problem", "cost", "relaxed"), [(TWO_PARTS, 14, 13.5), (TEN_PARTS, 762, 723.905)], ids=["two parts", "ten parts"]
 )
 def test_least_cost_and_relaxation_are_those_published(problem: SharedVisits, cost: float, relaxed: float) -> None:
-    answer = replace_at_shared_visits(problem)
+    answer = replace_at_shared_visits(problem, limit_s=900.0)  # a busy machine may need more than the usual minute
     assert answer.cost_usd == pytest.approx(cost, abs=1e-9)
     assert answer.bound_usd == pytest.approx(cost, rel=1e-6)
     assert answer.relaxed_usd == pytest.approx(relaxed, abs=5e-4)
