@@ -250,6 +250,8 @@ def typed(sheet: Sheet) -> tuple[Rows, list[Problem]]:
         texts = by_heading.get(column.name)
         if texts is None:
             columns[column.name] = [None if column.required else default_of(column)] * len(sheet.rows)
+            if column.required:
+                faulty.update((number, column.name) for number in sheet.numbers)
             continue
         values, wrong = _values(column, texts)
         columns[column.name] = [values[text] for text in texts]

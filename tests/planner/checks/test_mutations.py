@@ -124,6 +124,18 @@ def test_ten_thousand_random_mutations_of_the_demo_kind_are_told_or_harmless() -
     run_mutations(10_000, seed=2)
 
 
+def test_every_heading_may_be_missing_and_every_column_blank_or_noise() -> None:
+    for name, rows in small_tables.small_tables().items():
+        for column in rows[0]:
+            for cell in (None, "", "#", "-3", "2999-01-01"):
+                tables = small_tables.small_tables()
+                for row in tables[name]:
+                    row[column] = cell or ""
+                    if cell is None:
+                        del row[column]
+                held_to_account(small_tables.sheets(tables))
+
+
 @pytest.mark.parametrize("count", [40, pytest.param(1_500, marks=pytest.mark.long)])
 def test_files_that_are_cut_or_spoiled_never_give_a_traceback(tmp_path: Path, count: int) -> None:
     luck = random.Random(3)
