@@ -367,3 +367,47 @@ def test_a_reading_of_a_serial_that_is_not_in_the_fleet_is_left_out_and_said(rec
 def test_a_missing_fleet_is_refused(tmp_path: Path) -> None:
     with pytest.raises(RequestError):
         ask(tmp_path / "nowhere")
+
+
+def test_odd_records_never_break_it(tmp_path: Path) -> None:
+    """Readings and removals of any order, count and size: figures are finite, and nothing is raised."""
+    write_tables(tmp_path, fleet_tables(aircraft=4, seed=3, plain=True))
+    small = check(tmp_path)[0]
+    serials = [row["engine_serial"] for row in rows_in(small, "engines")]
+    modules = rows_in(small, "modules")
+    for seed in range(25):
+        rng = np.random.default_rng(seed)
+        seen = [
+            {
+                "engine_serial": str(rng.choice(serials)),
+                "date": AS_OF - dt.timedelta(days=int(rng.integers(-5, 900))),
+                "cycles_since_install": int(rng.choice([0, 1, 100, 5_000, 500_000])),
+                "margin_degC": float(rng.choice([-100.0, 20.0, 20.5, 300.0])),
+                "event": str(rng.choice(["", "", "wash", "swap", "visit"])),
+            }
+            for _ in range(rng.integers(0, 40))
+        ]
+        past = []
+        for _ in range(rng.integers(1, 40)):
+            module, start = modules[rng.integers(len(modules))], int(rng.choice([0, 100, 500_000]))
+            end = start + int(rng.choice([0, 1, 100, 3_000]))
+            past.append(
+                {
+                    "serial": module["module_serial"],
+                    "engine_type": module["engine_type"],
+                    "module": str(rng.choice([module["module"], "HPT"])),
+                    "cause": str(rng.choice(["distress", "unscheduled", "early", "none", "margin"])),
+                    "run": str(rng.choice(["first", "mature"])),
+                    "cycles_at_install": start,
+                    "cycles_at_removal": end,
+                    "hours_at_install": 2.0 * start,
+                    "hours_at_removal": 2.0 * float(rng.choice([start, end])),
+                    "removed_date": AS_OF - dt.timedelta(days=int(rng.integers(0, 4_000))),
+                    "ended": str(rng.choice(["failed", "pulled", "still_on"])),
+                    "cycles_last_seen_good": start if rng.random() < 0.3 else None,
+                }
+            )
+        found = of_records(with_rows(with_rows(small, "margins", seen), "removals", past))
+        for rows in found.tables.values():
+            for row in rows:
+                assert all(math.isfinite(value) for value in row.values() if isinstance(value, float)), row
