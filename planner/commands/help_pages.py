@@ -35,6 +35,10 @@ def commands_text() -> str:
 
 
 def _help(command: click.Command, called: str) -> str:
-    with click.Context(command, info_name=called, terminal_width=100, max_content_width=100) as context:
+    # a command keeps the help option that it was first asked with, so it is asked as the frame asks
+    names = frame.context_settings["help_option_names"]
+    with click.Context(
+        command, info_name=called, terminal_width=100, max_content_width=100, help_option_names=names
+    ) as context:
         lines = [line.rstrip() for line in command.get_help(context).splitlines()]
     return "```text\n" + "\n".join(lines) + "\n```\n"
