@@ -152,6 +152,23 @@ def test_a_study_can_be_cancelled_and_keeps_what_is_done(server: str, browser: A
     watched.close()
 
 
+def test_life_left_shows_what_is_soon_and_who_is_hit(server: str, browser: Any) -> None:
+    watched = Watched(browser, server)
+    page = watched.page
+    page.goto(f"{server}/life")
+    page.get_by_role("heading", name="Life left", exact=True).wait_for(timeout=60_000)
+    page.get_by_test_id("stDataFrame").first.wait_for()
+    page.locator("canvas, svg.marks").first.wait_for()
+    page.get_by_role("tab", name="Directives").click()
+    page.get_by_text("Value of the life lost, USD").first.wait_for()
+    page.get_by_role("tab", name="Owners and places").click()
+    page.get_by_text("by when they must go back").first.wait_for()
+    page.get_by_role("tab", name="Records").click()
+    page.get_by_text("What the rules find in the records").first.wait_for()
+    _shot(page, "life")
+    watched.close()
+
+
 def _shot(page: Any, name: str) -> None:
     """Leave a picture where SPOOLWRIGHT_SHOTS says, for a person to look at."""
     folder = os.environ.get("SPOOLWRIGHT_SHOTS")
