@@ -4,19 +4,31 @@ from __future__ import annotations
 
 import shutil
 from pathlib import Path
+from typing import NamedTuple
 
 from planner.demo.contracts import delivery_rows, lease_tables, owners
-from planner.demo.dirty import dirty_tables
-from planner.demo.history import Histories, histories
-from planner.demo.past import Past, live, part_serial
-from planner.demo.planted import plant, smooth
-from planner.demo.state_tables import aircraft_rows, engine_rows, margin_rows, module_rows, places
-from planner.demo.sub_fleets import SUB_FLEETS, tails
-from planner.demo.type_tables import Row, settings, type_tables
+from planner.demo.dirty import write_dirty
+from planner.demo.history import histories
+from planner.demo.past import RATING_CHANGE, Past, live
+from planner.demo.planted import Planted, plant
+from planner.demo.scenario_tables import scenario_tables
+from planner.demo.shelf import shelf
+from planner.demo.state_tables import aircraft_rows, engine_rows, module_rows, part_rows
+from planner.demo.sub_fleets import scale_of, tails
+from planner.demo.type_tables import Row, type_tables
+from planner.demo.watch import watch_rows
 from planner.demo.write import move_into_place, new_folder, write_tables
 
 DEFAULT_AIRCRAFT = 40
 DEFAULT_SEED = 7
+DIRTY_AIRCRAFT = 12  # enough for pasts that hold every fault; three of them are kept
+
+
+class Demo(NamedTuple):
+    """An invented fleet: its tables, and what is planted in them."""
+
+    tables: dict[str, list[Row]]
+    planted: tuple[Planted, ...]
 
 
 def make(folder: Path, *, aircraft: int = DEFAULT_AIRCRAFT, seed: int = DEFAULT_SEED, plain: bool = False) -> None:
@@ -24,98 +36,84 @@ def make(folder: Path, *, aircraft: int = DEFAULT_AIRCRAFT, seed: int = DEFAULT_
 
     Raises RequestError for a size out of range or a folder that holds something.
     """
-    tables = fleet_tables(aircraft=aircraft, seed=seed, plain=plain)
     aside = new_folder(folder)
     try:
+        tables = fleet(aircraft=aircraft, seed=seed, plain=plain).tables
         write_tables(aside, tables)
         if not plain:
-            dirty = aside / "dirty"
-            dirty.mkdir()
-            dirty_tables(dirty, tables)
+            (aside / "dirty").mkdir()
+            write_dirty(aside / "dirty", before_dirt())
         move_into_place(aside, folder)
     finally:
         shutil.rmtree(aside, ignore_errors=True)
 
 
-def fleet_tables(*, aircraft: int, seed: int, plain: bool) -> dict[str, list[Row]]:
-    """Return every table of the invented fleet."""
-    flying = tails(aircraft, seed)
-    scale = aircraft / sum(sub.share for sub in SUB_FLEETS)
-    kinds = {tail.sub_fleet.engine_type for tail in flying}
-    tables = {"settings": settings(aircraft), **_only(type_tables(scale), kinds)}
+def before_dirt() -> dict[str, list[Row]]:
+    """Return the fleet that the dirty twin is made of: the same small one whatever was asked for."""
+    return fleet(aircraft=DIRTY_AIRCRAFT, seed=DEFAULT_SEED, plain=True).tables
+
+
+def fleet(*, aircraft: int = DEFAULT_AIRCRAFT, seed: int = DEFAULT_SEED, plain: bool = False) -> Demo:
+    """Return the invented fleet of that many aircraft today.
+
+    Raises RequestError for a size out of range.
+    """
+    flying, scale = tails(aircraft, seed), scale_of(aircraft)
+    kinds = sorted({tail.sub_fleet.engine_type for tail in flying})
+    tables = scenario_tables(set(kinds), scale=scale) | type_tables(set(kinds))
     past = live(flying, tables, scale=scale, seed=seed)
     lived = histories(past)
-    where = places(past)
+    spare = shelf(kinds, scale=scale, seed=seed, plain=plain)
     tables |= {
-        "aircraft": aircraft_rows(past, flying, lived.tails),
-        "engines": engine_rows(past, where),
-        "modules": module_rows(past, where),
-        "parts": _parts(past, lived),
-        "part_history": lived.parts,
+        "aircraft": aircraft_rows(past, flying, lived),
+        "engines": engine_rows(past),
+        "modules": module_rows(past) + spare.modules,
+        "parts": part_rows(past, lived) + spare.parts,
+        "part_history": lived.parts + spare.history,
         "installs": lived.installs,
         "removals": lived.removals,
-        "margins": margin_rows(past, where, seed),
-        "rating_changes": [
-            {"tail": tail, "from_date": day, "rating": rating}
-            for tail in past.changed_rating
-            for day, rating in ((_entry(past, tail), "high"), ("2022-04-01", "mid"))
-        ],
-        **lease_tables(flying, seed, plain=plain),
+        "margins": past.readings,
+        "rating_changes": _rating_changes(past),
+        **lease_tables(flying, seed=seed, plain=plain),
     }
+    tables["watch"] = watch_rows(tables)
     _own(tables, owners(flying))
     tables["lease_delivery"] = delivery_rows(tables["modules"], tables["engines"], tables["leases"])
-    if plain:
-        smooth(tables)
-    else:
-        plant(tables)
-    return tables
+    _leave(tables)
+    return Demo(tables, () if plain else plant(tables))
 
 
-def _only(tables: dict[str, list[Row]], kinds: set[str]) -> dict[str, list[Row]]:
-    """Leave out types that no aircraft flies, so that a small fleet is whole and no larger than it must be."""
-    numbers = {row["part_number"] for row in tables["part_types"] if row["engine_type"] in kinds}
-    result = {}
-    for name, rows in tables.items():
-        kept = [r for r in rows if r.get("engine_type", next(iter(kinds))) in kinds]
-        result[name] = [r for r in kept if name != "part_limits" or r["part_number"] in numbers]
-    return result
+def fleet_tables(*, aircraft: int, seed: int, plain: bool) -> dict[str, list[Row]]:
+    """Return the tables alone."""
+    return fleet(aircraft=aircraft, seed=seed, plain=plain).tables
 
 
-def _entry(past: Past, tail: str) -> str:
-    return next(str(row["entry_date"]) for row in past.delivered["aircraft"] if row["tail"] == tail)
-
-
-def _parts(past: Past, lived: Histories) -> list[Row]:
-    hours: dict[str, float] = {}
-    for row in lived.parts:
-        hours[row["part_serial"]] = hours.get(row["part_serial"], 0.0) + row["hours"]
+def _rating_changes(past: Past) -> list[Row]:
+    """Return the ratings of the tails that changed, from their first day on."""
     rows = []
-    for module in past.world.all_modules:
-        for part in module.parts:
-            serial = part_serial(part.serial)
-            rows.append(
-                {
-                    "part_serial": serial,
-                    "part_number": part.spec.part_number,
-                    "module_serial": module.serial,
-                    "cycles_since_new": sum(part.counts(module.run)),
-                    "hours_since_new": round(hours.get(serial, 0.0), 2),
-                    "status_substantiated": "yes",
-                    "trace_to_birth": "yes",
-                }
-            )
+    for aircraft in past.delivered["aircraft"]:
+        if aircraft["tail"] in past.changed_rating:
+            days = ((aircraft["entry_date"], aircraft["rating"]), (RATING_CHANGE.isoformat(), aircraft["rating_after"]))
+            rows += [{"tail": aircraft["tail"], "from_date": day, "rating": rating} for day, rating in days]
     return rows
 
 
 def _own(tables: dict[str, list[Row]], tail_owner: dict[str, str]) -> None:
-    """Give everything on a leased tail to its lessor; the rest is the airline's own (owner blank)."""
-    engine_owner = {}
+    """Give everything on a leased tail to its lessor, and what is in an engine to the engine's owner; the rest is the
+    airline's own (owner blank)."""
+    engine_owner, module_owner = {}, {}
     for row in tables["aircraft"]:
         row["owner"] = tail_owner.get(row["tail"], "")
     for row in tables["engines"]:
-        row["owner"] = engine_owner[row["engine_serial"]] = tail_owner.get(row.get("tail", ""), "")
-    module_owner = {}
+        row["owner"] = engine_owner[row["engine_serial"]] = row.get("owner") or tail_owner.get(row.get("tail", ""), "")
     for row in tables["modules"]:
         row["owner"] = module_owner[row["module_serial"]] = engine_owner.get(row.get("engine_serial", ""), "")
     for row in tables["parts"]:
         row["owner"] = module_owner.get(row["module_serial"], "")
+
+
+def _leave(tables: dict[str, list[Row]]) -> None:
+    """One aircraft of the airline's own leaves WB in 2030."""
+    own = [row for row in tables["aircraft"] if row["sub_fleet"] == "WB" and not row["owner"]]
+    if own:
+        own[-1]["exit_date"] = "2030-06-30"

@@ -1,57 +1,57 @@
-"""From the lived past to the tables of what is where: aircraft, engines, modules, parts and their histories."""
+"""From the lived past to the tables of what is where: aircraft, engines, modules and parts on the as-of date."""
 
 from __future__ import annotations
 
 import datetime as dt
-from typing import NamedTuple
 
-from planner.demo.luck import uniform
-from planner.demo.past import Past, margin_lost, part_serial, rows_named
+from planner.demo.deliver import part_serial, type_of
+from planner.demo.history import Histories
+from planner.demo.past import Past
 from planner.demo.sub_fleets import AS_OF, Tail
 from planner.demo.type_tables import Row
 from sim.events import KIND
-from sim.removal import slope
-from sim.state import EngineState, ModuleState
+from sim.state import EngineState
 
-_KEEP = ("install", "removal", "flown", "part_off", "part_on", "induction", "entry", "work")
-
-
-class Places(NamedTuple):
-    """Where engines hang: engine serial to (tail, position)."""
-
-    engine: dict[str, tuple[str, int]]
+_LEAST_DAYS_AHEAD = 7  # a visit that should be over comes back in a week
+_SPARE_BASES = {"N": ("Home", "Dune"), "W": ("Home",)}
+_LEASED_IN_UNTIL, LEASED_IN_OWNER = "2026-12-31", "Evergate Pool"
 
 
-def places(past: Past) -> Places:
-    found = {}
-    for aircraft in past.world.aircraft:
-        for position, engine in enumerate(aircraft.engines):
-            if engine is not None:
-                found[engine.serial] = (aircraft.row.tail, position + 1)
-    return Places(found)
+def wing_places(past: Past) -> dict[str, tuple[str, int]]:
+    """Return tail and position of every engine that hangs."""
+    return {
+        engine.serial: (aircraft.row.tail, position + 1)
+        for aircraft in past.world.aircraft
+        for position, engine in enumerate(aircraft.engines)
+        if engine is not None
+    }
 
 
-def aircraft_rows(past: Past, tails: list[Tail], histories: dict[str, tuple[int, float]]) -> list[Row]:
+def aircraft_rows(past: Past, tails: list[Tail], lived: Histories) -> list[Row]:
     """Return the tails with what they have flown."""
     rows = []
-    delivered = rows_named(past.delivered["aircraft"], "tail")
+    delivered = {row["tail"]: row for row in past.delivered["aircraft"]}
     for tail in tails:
-        cycles, hours = histories.get(tail.tail, (0, 0.0))
-        row = dict(delivered[tail.tail])
-        row |= {"rating": tail.rating, "rating_until": "", "rating_after": ""}
-        if tail.entry <= AS_OF:
-            row["entry_date"] = ""
+        cycles, hours = lived.tails.get(tail.tail, (0, 0.0))
+        row = delivered[tail.tail] | {"rating": tail.rating, "rating_until": "", "rating_after": ""}
         row |= {"cycles_since_new": cycles, "hours_since_new": round(hours, 2)}
+        if not tail.joins_later:
+            row["entry_date"] = ""
         rows.append(row)
     return rows
 
 
-def engine_rows(past: Past, where: Places) -> list[Row]:
-    """Return the engines: on the wing, spare, or in a shop with the days of the visit."""
-    world, rows = past.world, []
-    delivered = rows_named(past.delivered["engines"], "engine_serial")
-    last = _last_facts(past)
-    for engine in world.all_engines:
+def engine_rows(past: Past) -> list[Row]:
+    """Return the engines: on the wing, spare, or in a shop with the days of the visit.
+
+    The last spare of type N on the shelf is leased in, where there is another one.
+    """
+    rows, spares = [], []
+    where, last = wing_places(past), _last_events(past)
+    delivered = {row["engine_serial"]: row for row in past.delivered["engines"]}
+    for engine in past.world.all_engines:
+        if engine.serial not in delivered:
+            continue  # rented in the past, and gone
         row = {
             "engine_serial": engine.serial,
             "engine_type": engine.spec.engine_type,
@@ -61,148 +61,107 @@ def engine_rows(past: Past, where: Places) -> list[Row]:
             "cycles_since_new": engine.csn,
             "cycles_since_build": engine.csb,
         }
-        if engine.serial in where.engine:
-            tail, position = where.engine[engine.serial]
+        if engine.serial in where:
+            tail, position = where[engine.serial]
             row |= {"place": "wing", "tail": tail, "position": position}
-        elif engine.serial in world.under_way or _comes_back(past, engine, last):
+        elif engine.serial in past.in_shops:
             row |= _visit(past, engine, last)
         else:
-            row |= {"place": "spare", "base": "Dune" if uniform(1, "base", engine.serial) < 0.3 else "Home"}
+            row |= {"place": "spare"}
+            spares.append(row)
         rows.append(row)
+    _shelve(spares)
     return rows
 
 
-def _comes_back(past: Past, engine: EngineState, last: dict[str, dict[str, tuple[float, str, str]]]) -> bool:
-    """Return whether an engine off the wing is on its way to, in, or from a shop."""
-    return engine not in past.world.engine_pools[engine.spec.engine_type].engines and "induction" in last.get(
-        engine.serial, {}
-    )
+def _shelve(spares: list[Row]) -> None:
+    """Give each spare its base in turn, and lease one in."""
+    for kind, bases in _SPARE_BASES.items():
+        of_kind = [row for row in spares if row["engine_type"] == kind]
+        for number, row in enumerate(of_kind):
+            row["base"] = bases[number % len(bases)]
+        if kind == "N" and len(of_kind) > 1:
+            of_kind[-1] |= {"place": "leased_in", "lease_in_until": _LEASED_IN_UNTIL, "owner": LEASED_IN_OWNER}
 
 
-def _last_facts(past: Past) -> dict[str, dict[str, tuple[float, str, str]]]:
-    """Return, by engine, the last removal and induction: (day, other, detail)."""
-    kinds = {KIND["removal"]: "removal", KIND["induction"]: "induction"}
-    found: dict[str, dict[str, tuple[float, str, str]]] = {}
-    for row in past.world.log.rows:
-        if row[0] in kinds:
-            found.setdefault(row[6], {})[kinds[row[0]]] = (row[1], row[7], row[8])
-    return found
-
-
-def date_of(past: Past, day: float) -> dt.date:
-    return past.start + dt.timedelta(days=int(day))
-
-
-def _visit(past: Past, engine: EngineState, last: dict[str, dict[str, tuple[float, str, str]]]) -> Row:
-    inducted, shop, visit = last[engine.serial]["induction"]
-    removed = last[engine.serial]["removal"][0]
-    specs = past.world.setup.shops[engine.spec.engine_type]
-    spec = next(s for s in specs if s.shop == shop)
-    row: Row = {"place": "shop", "shop": shop, "visit": visit, "removed_date": date_of(past, removed).isoformat()}
-    ready = date_of(past, inducted + spec.turn[visit].days + spec.transport_days)
-    if date_of(past, inducted) <= AS_OF:
-        row["inducted_date"] = date_of(past, inducted).isoformat()
-        row["ready_date"] = max(ready, AS_OF + dt.timedelta(days=7)).isoformat()
+def _visit(past: Past, engine: EngineState, last: dict[tuple[str, str], tuple[float, str, str]]) -> Row:
+    """Return the days of a visit; it begins after the as-of date where the engine still queues."""
+    begin, shop, visit = last["induction", engine.serial]
+    removed = past.date(last["removal", engine.serial][0])
+    row: Row = {"place": "shop", "shop": shop, "visit": visit, "removed_date": removed.isoformat()}
+    inducted = past.date(begin)
+    if inducted <= AS_OF:
+        spec = next(s for s in past.world.setup.shops[engine.spec.engine_type] if s.shop == shop)
+        ready = past.date(begin + spec.turn[visit].days + spec.transport_days)
+        row["inducted_date"] = inducted.isoformat()
+        row["ready_date"] = max(ready, AS_OF + dt.timedelta(days=_LEAST_DAYS_AHEAD)).isoformat()
     return row
 
 
-def module_rows(past: Past, where: Places) -> list[Row]:
-    """Return the modules with ages and the margin that each has lost at the rating where it flies."""
-    world, rows = past.world, []
-    rating = {a.row.tail: a.flying.rating for a in world.aircraft}
-    home = {m.serial: engine for engine in world.all_engines for m in engine.modules}
-    for module in world.all_modules:
-        engine = home.get(module.serial)
-        tail = where.engine.get(engine.serial, ("", 0))[0] if engine else ""
-        at = rating[tail] if tail else world.matching.default_rating(module.spec.engine_type)
-        row = {
+def _last_events(past: Past) -> dict[tuple[str, str], tuple[float, str, str]]:
+    """Return (day, other, detail) of the last removal and induction of each engine in a shop."""
+    kinds = {KIND["removal"]: "removal", KIND["induction"]: "induction"}
+    return {
+        (kinds[row[0]], row[6]): (row[1], row[7], row[8])
+        for row in past.world.log.rows
+        if row[0] in kinds and row[6] in past.in_shops
+    }
+
+
+def module_rows(past: Past) -> list[Row]:
+    """Return the modules in engines, with ages and the margin that each has lost at the rating where it flies.
+
+    What the engine itself is better or worse than its type when new is told by its modules, each by its share.
+    """
+    rows = []
+    rating = {e.serial: a.flying.rating for a in past.world.aircraft for e in a.engines if e is not None}
+    delivered = {row["engine_serial"] for row in past.delivered["engines"]}
+    for engine in past.world.all_engines:
+        if engine.serial not in delivered:
+            continue
+        kind = engine.spec.engine_type
+        at = rating.get(engine.serial, past.world.matching.default_rating(kind))
+        shares = {m.module: m.wear_share for m in type_of(kind).modules}
+        for module in engine.modules:
+            lost = module.lost_degC(at) - engine.offset_degC * shares[module.spec.module]
+            rows.append(
+                {
+                    "module_serial": module.serial,
+                    "engine_type": kind,
+                    "module": module.spec.module,
+                    "engine_serial": engine.serial,
+                    "standard": module.standard,
+                    "hours_since_new": round(module.hsn, 2),
+                    "cycles_since_new": module.csn,
+                    "hours_since_restoration": round(module.hsr, 2),
+                    "cycles_since_restoration": module.csr,
+                    "hours_since_build": round(module.hsb, 2),
+                    "cycles_since_build": module.csb,
+                    "first_run": "yes" if module.first_run else "no",
+                    "margin_lost_degC": round(lost, 3),
+                }
+            )
+    return rows
+
+
+def part_rows(past: Past, lived: Histories) -> list[Row]:
+    """Return the parts with their cycles and hours."""
+    hours: dict[str, float] = {}
+    for row in lived.parts:
+        hours[row["part_serial"]] = hours.get(row["part_serial"], 0.0) + row["hours"]
+    delivered = {row["engine_serial"] for row in past.delivered["engines"]}
+    return [
+        {
+            "part_serial": part_serial(part.serial),
+            "part_number": part.spec.part_number,
             "module_serial": module.serial,
-            "engine_type": module.spec.engine_type,
-            "module": module.spec.module,
-            "standard": module.standard,
-            "hours_since_new": round(module.hsn, 2),
-            "cycles_since_new": module.csn,
-            "hours_since_restoration": round(module.hsr, 2),
-            "cycles_since_restoration": module.csr,
-            "hours_since_build": round(module.hsb, 2),
-            "cycles_since_build": module.csb,
-            "first_run": "yes" if module.first_run else "no",
-            "margin_lost_degC": round(margin_lost(module, at) - _build_luck(engine, module), 3),
+            "cycles_since_new": sum(part.counts(module.run)),
+            "hours_since_new": round(hours.get(part_serial(part.serial), 0.0), 2),
+            "status_substantiated": "yes",
+            "trace_to_birth": "yes",
         }
-        row |= {"engine_serial": engine.serial} if engine else {"place": "pool", "base": "Home"}
-        rows.append(row)
-    return rows
-
-
-def _build_luck(engine: EngineState | None, module: ModuleState) -> float:
-    """Return what the last build was better than the type's margin; the records book it on the HPT."""
-    return engine.offset_degC if engine is not None and module.spec.module == "HPT" else 0.0
-
-
-def margin_rows(past: Past, where: Places, seed: int) -> list[Row]:
-    """Return readings of the margin of the engines on the wing, back from today's state along the wear law."""
-    rows = []
-    for aircraft in past.world.aircraft:
-        for engine in aircraft.engines:
-            if engine is None or engine.since_cycles < 60 or not engine.modules:
-                continue
-            rows += _readings(past, engine, aircraft.flying, aircraft.cycles_per_year, seed)
-    return rows
-
-
-def _readings(past: Past, engine: EngineState, flying, cycles_per_year: float, seed: int) -> list[Row]:  # type: ignore[no-untyped-def]
-    world = past.world
-    sigma = world.engine_rows[engine.spec.engine_type].reading_noise_degC
-    span = min(engine.since_cycles, round(2.5 * cycles_per_year))
-    count = max(4, min(30, span // max(1, round(cycles_per_year / 12))))
-    today = world.season.flown(world.env.now)
-    rows = []
-    for number in range(count):
-        back = round(span * (1.0 - (number + 0.5) / count))
-        at = engine.since_cycles - back
-        lost = _lost_then(engine, flying, back)
-        gain = _wash_then(engine, flying, back)
-        u, v = uniform(seed, "noise", engine.serial, number), uniform(seed, "outlier", engine.serial, number)
-        noise = sigma * _normal(u) * (4.0 if v < 0.02 else 1.0)
-        day = world.season.day(today - back / cycles_per_year)
-        rows.append(
-            {
-                "engine_serial": engine.serial,
-                "date": date_of(past, day).isoformat(),
-                "cycles_since_install": at,
-                "margin_degC": round(engine.margin_degC(flying.rating) + lost + gain + noise, 1),
-                "event": "",
-            }
-        )
-    return rows
-
-
-def _normal(u: float) -> float:
-    from sim.draws import normal
-
-    return normal(u)
-
-
-def _lost_then(engine: EngineState, flying, back: int) -> float:  # type: ignore[no-untyped-def]
-    """Return how much more margin the engine had ``back`` cycles ago."""
-    from sim.wear import gained
-
-    total = 0.0
-    for module in engine.modules:
-        law = module.spec.wear[flying.rating]
-        since = max(0, module.csr - back)
-        factor = flying.wear_factor * module.factor
-        total += factor * law.unit_degC * gained(law, since, module.csr - since, flying.hours_per_cycle)
-    return total
-
-
-def _wash_then(engine: EngineState, flying, back: int) -> float:  # type: ignore[no-untyped-def]
-    from sim.wear import wash_gain
-
-    if flying.wash is None:
-        return 0.0
-    gain, half_life, every, _ = flying.wash
-    return wash_gain(gain_degC=gain, half_life=half_life, every=every, since=max(0, engine.csb - back))
-
-
-__all__ = ["ModuleState", "part_serial", "slope"]
+        for engine in past.world.all_engines
+        if engine.serial in delivered
+        for module in engine.modules
+        for part in module.parts
+    ]
