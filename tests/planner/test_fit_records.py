@@ -293,7 +293,7 @@ def test_a_fleet_that_fails_more_and_more_is_told_so(records: Records) -> None:
     rows = removals(records, seed=11)[:60]
     for row in rows:
         # most of them late: days before today go as the square of an even draw
-        row |= {"removed_date": AS_OF - dt.timedelta(days=int(3_000 * rng.random() ** 2) + 1), "cause": "distress"}
+        row |= {"removed_date": AS_OF - dt.timedelta(days=int(2_000 * rng.random() ** 2) + 1), "cause": "distress"}
         row["ended"] = "failed"
     found = of_records(with_rows(records, "removals", rows))
     trend = next(row for row in found.tables["trends"] if row["cause"] == "distress")
