@@ -5,7 +5,8 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING
 
-from sim.removal import CAUSES, Removal, margin_now, part_removal, planned_removal
+from sim.fit_rules import FitPart, Offered, Receiver, mates_of, may_fit
+from sim.removal import Removal, margin_now, planned_removal
 from sim.spec import CHECK, RESTORATION
 from sim.state import EngineState, Flying, ModuleState
 from sim.view import ModuleView, PartView, ShopView, View
@@ -13,8 +14,6 @@ from sim.view import ModuleView, PartView, ShopView, View
 if TYPE_CHECKING:
     from sim.aircraft import AircraftProcess
     from sim.world import World
-
-_DISTRESS = CAUSES.index("distress")
 
 
 class Matching:
@@ -27,11 +26,7 @@ class Matching:
         self.shelf_since: dict[str, float] = {}
         self._flying_of: dict[str, Flying] = {}
         self._rating_of: dict[str, int] = {}
-        # pairs of standards that may mate, by type and pair of modules; a pair of modules without rows may always mate
-        self.mates: dict[tuple[str, str, str], set[tuple[str, str]]] = {}
-        for row in world.setup.fleet.standards:
-            key = (row.engine_type, row.module, row.mates_with_module)
-            self.mates.setdefault(key, set()).add((row.standard, row.mates_with_standard))
+        self.mates = mates_of(world.setup.fleet.standards)
 
     # ratings -----------------------------------------------------------------------------------------------------
 
@@ -155,7 +150,9 @@ class Matching:
         until = self._until(aircraft)
         pool = world.module_pools[kind]
         shelf = tuple(
-            self._module_view(m, flying, now, until) for m in pool.modules if self.may_mate(engine, m, flying)
+            self._module_view(m, flying, now, until)
+            for m in pool.modules
+            if removal.slot in (-1, m.spec.slot) and self.may_mate(aircraft, engine, m)
         )
         slot = removal.slot
         least = world.bench.least_level(engine.modules[slot], removal) if slot >= 0 and engine.modules else CHECK
@@ -235,22 +232,41 @@ class Matching:
         team, jobs = world.teams[self.team_for(kind, now, 5.0)]
         return jobs.expected_start(now + team.call_out_days, 5.0)
 
-    def may_mate(self, engine: EngineState, module: ModuleState, flying: Flying) -> bool:
-        """Return whether a pool module may go on an engine as it will be flown: limits published and life left at the
-        rating, standards that mate with every neighbour, and the owner's rule."""
+    def may_mate(self, aircraft: AircraftProcess, engine: EngineState, module: ModuleState) -> bool:
+        """Return whether a pool module may go on an engine as it will be flown: the six tests of sim/fit_rules.py."""
+        flying, spec, row = aircraft.flying, engine.spec, aircraft.row
+        now = self.world.env.now
+        rating = flying.rating
+        parts = []
         for part in module.parts:
-            if not part.known or not part.epochs[0].limits[flying.rating]:
-                return False
-        if part_removal(module, flying.rating, self.world.env.now, lambda _: 10**9, flying.hours_per_cycle).cycles < 1:
-            return False
-        kind, name = engine.spec.engine_type, module.spec.module
-        for other in engine.modules:
-            if other.spec.slot == module.spec.slot:
-                continue
-            allowed = self.mates.get((kind, name, other.spec.module))
-            if allowed is not None and (module.standard, other.standard) not in allowed:
-                return False
-            allowed = self.mates.get((kind, other.spec.module, name))
-            if allowed is not None and (other.standard, module.standard) not in allowed:
-                return False
-        return self.world.renting.owner_allows(engine, module)
+            at = part.epoch_at(now)
+            limit = at.limits[rating] or None
+            number = part.spec.part_number
+            belongs = (spec.engine_type, spec.modules[part.spec.slot].module)
+            left = part.left(module.run, rating, at)
+            parts.append(FitPart(part.serial, number, belongs, limit, left, part.known))
+        rules = self.world.renting.exchange_rules
+        offered = Offered(
+            module_serial=module.serial,
+            engine_type=module.spec.engine_type,
+            module=module.spec.module,
+            standard=module.standard,
+            owner=module.owner,
+            exchange_rule=rules.get(module.serial, ""),
+            parts=tuple(parts),
+        )
+        receiver = Receiver(
+            engine_serial=engine.serial,
+            engine_type=spec.engine_type,
+            module=module.spec.module,
+            rating=spec.ratings[rating],
+            ratings=spec.ratings,
+            neighbours=tuple((m.spec.module, m.standard) for m in engine.modules),
+            owner=engine.owner,
+            exchange_rule=rules.get(engine.serial, ""),
+            tail=row.tail,
+            aircraft_type=row.engine_type,
+            leaves_day=row.exit_day,
+            etops_minutes=row.etops_minutes,
+        )
+        return not may_fit(offered, receiver, mates=self.mates, day=now)

@@ -6,7 +6,7 @@ import math
 from typing import TYPE_CHECKING
 
 from sim.events import KIND
-from sim.state import EngineState, ModuleState
+from sim.state import EngineState
 
 if TYPE_CHECKING:
     from sim.aircraft import AircraftProcess
@@ -16,24 +16,30 @@ _SOUGHT, _START, _END = (KIND[k] for k in ("lease_sought", "lease_start", "lease
 _SUMMER = (6, 7, 8, 9)  # June to September, as lease_market.summer_chance says
 
 
+def _exchange_rules(world: World) -> dict[str, str]:
+    """Return what the lease of each engine and module (by serial) says of exchanges; what is under none is left out."""
+    fleet = world.setup.fleet
+    of_tail = {lease.tail: lease.exchange_rule for lease in fleet.leases if lease.tail}
+    rules = {lease.engine_serial: lease.exchange_rule for lease in fleet.leases if lease.engine_serial}
+    for engine in fleet.engines:
+        if engine.tail in of_tail:
+            rules[engine.engine_serial] = of_tail[engine.tail]
+    for module in fleet.modules:
+        if module.engine_serial in rules:
+            rules[module.module_serial] = rules[module.engine_serial]
+    return rules
+
+
 class Renting:
     """The lease market as one run meets it."""
 
-    __slots__ = ("_never", "_since", "requests", "world")
+    __slots__ = ("_since", "exchange_rules", "requests", "world")
 
     def __init__(self, world: World) -> None:
         self.world = world
         self.requests: dict[str, int] = {}
         self._since: dict[str, tuple[float, EngineState, AircraftProcess | None]] = {}
-        self._never = {
-            lease.tail or lease.engine_serial for lease in world.setup.fleet.leases if lease.exchange_rule == "never"
-        }
-
-    def owner_allows(self, engine: EngineState, module: ModuleState) -> bool:
-        """Return whether the owner of an engine lets another owner's module in."""
-        if engine.serial not in self._never:
-            return True
-        return module.owner == engine.owner
+        self.exchange_rules = _exchange_rules(world)
 
     def look_out(self, aircraft: AircraftProcess) -> None:
         """An aircraft begins to wait: seek a lease-in after the strategy's set time."""

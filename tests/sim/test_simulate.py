@@ -9,7 +9,7 @@ import pytest
 from builders import exponential_removals, tiny_fleet
 
 from sim.events import KIND, KINDS, Log
-from sim.fleet import Fleet, Lease, LeaseMarket, Module, Part, PartLimit, Team
+from sim.fleet import Fleet, Lease, LeaseMarket, Module, Part, PartLimit, Standard, Team
 from sim.spec import setup
 from sim.start import names
 from sim.world import simulate
@@ -221,3 +221,24 @@ def test_a_valuation_inside_the_study_moves_nothing() -> None:
     for kind in ("removal", "install", "down", "module_on", "lease_sought"):
         assert facts(a, kind) == facts(b, kind)
     assert sum(r[9] for r in a.rows if r[0] == KIND["flown"]) == sum(r[9] for r in b.rows if r[0] == KIND["flown"])
+
+
+def _with_spare_core(fleet: Fleet, **changes: object) -> Fleet:
+    module, part = spare_core(**changes)
+    return replace(fleet, modules=(*fleet.modules, module), parts=(*fleet.parts, part))
+
+
+def test_a_module_of_a_standard_that_does_not_mate_stays_on_the_shelf() -> None:
+    pairs = (Standard(engine_type="T", module="core", standard="", mates_with_module="fan", mates_with_standard=""),)
+    fleet = _with_spare_core(tiny_fleet(tails=1, spares=1), standard="old")
+    assert facts(run(fleet, "exchange", days=300.0), "module_on") != []
+    assert facts(run(replace(fleet, standards=pairs), "exchange", days=300.0), "module_on") == []
+
+
+def test_a_lease_that_allows_no_exchange_keeps_other_owners_modules_out() -> None:
+    fleet = _with_spare_core(tiny_fleet(tails=1, spares=0))
+    fleet = replace(fleet, engines=tuple(replace(e, owner="X") for e in fleet.engines))
+    for rule, exchanged in (("own_back", True), ("never", False)):
+        lease = Lease(lease="L", owner="X", return_day=5000.0, terms="A", tail="A1", exchange_rule=rule)
+        log = run(replace(fleet, leases=(lease,)), "exchange", days=300.0)
+        assert (facts(log, "module_on") != []) is exchanged
