@@ -269,8 +269,8 @@ def _sure(selected: Selected, rule: Rule) -> str:
     million = rule.delta_usd / 1e6
     if selected.reason == "decided":
         return (
-            f"with a chance of at least {rule.level_frac:.0%} it is the cheapest of the {len(selected.totals)} simulated if "
-            f"it is cheaper than every other by {million:.2f} M USD (Kim and Nelson 2001), {selected.runs} runs"
+            f"with a chance of at least {rule.level_frac:.0%} it is the cheapest of the {len(selected.totals)} simulated "
+            f"if it is cheaper than every other by {million:.2f} M USD (Kim and Nelson 2001), {selected.runs} runs"
         )
     left = len(selected.left)
     why = "stopped by hand" if selected.reason == "cancelled" else "the runs allowed are used up"
@@ -313,8 +313,8 @@ def _parted(answer: TypeAnswer, choice: Holding, own: list[StockRow], number: in
         )
     reasons.append("planned removals come on dates that the formula only spreads by quarter-years or more")
     return (
-        f"Type {answer.model.kind.engine_type}: own engines suffice for {choice.cover_frac:.0%} of the time by formula, "
-        f"{cover:.0%} simulated (an aircraft stands for {waits:.0%} of it, engines leased in help out); "
+        f"Type {answer.model.kind.engine_type}: own engines suffice for {choice.cover_frac:.0%} of the time by "
+        f"formula, {cover:.0%} simulated (an aircraft stands for {waits:.0%} of it, engines leased in help out); "
         + "; ".join(reasons)
         + "."
     )
