@@ -1,7 +1,7 @@
 """What to do while an engine is open: which parts now, which later, which level, which build goal.
 
 ``build(fleet, engine_serial)`` solves the plan of one engine to its end exactly on its points, and plays the simple
-rules on the same points and prices. planner/build_rows.py tells the answer as tables.
+rules at the same prices on finer ones. planner/build_rows.py tells the answer as tables.
 """
 
 from __future__ import annotations
@@ -13,16 +13,18 @@ import numpy as np
 from numpy.typing import NDArray
 
 from planner.build_engine import Planned, problem_for
-from planner.build_kernel import Opened, open_at_best
-from planner.build_points import openings_of, points_of, used_serials
+from planner.build_kernel import Opened
+from planner.build_points import used_serials
 from planner.build_rules import Played, Rule, best_goal, play
+from planner.build_search import Searched, goals_of, search
 from planner.off_wing import Coming
 from planner.openings import Install, Openings, opened_for, plan_usd
-from sim.errors import NoSolutionError
+from sim.errors import NoSolutionError, RequestError
 from sim.fleet import Fleet
 from sim.removal import FAR
 
-POINTS = 26  # even steps from now to the end; more are slower and change the first opening little
+YEARS = 6.0  # span of a plan; beyond it, what is left counts at its worth
+LIMIT_S = 5.0
 RULES: tuple[tuple[str, Rule], ...] = (
     ("hard goal", "hard_goal"),
     ("exposed only", "exposed_only"),
@@ -47,6 +49,8 @@ class BuildPlan(NamedTuple):
     openings: Openings
     best: Opened
     rules: tuple[RuleCost, ...]
+    fine_points: tuple[float, ...]
+    fine: Openings
     warnings: tuple[str, ...]
 
     @property
@@ -75,54 +79,63 @@ class BuildPlan(NamedTuple):
         return used_serials(self.planned.problem)
 
 
-def build(fleet: Fleet, engine_serial: str, *, open_now: bool | None = None, limit_s: float = 60.0) -> BuildPlan:
-    """Return the best plan for one engine. ``open_now`` None: open when it has come off and waits for its visit.
+def build(
+    fleet: Fleet,
+    engine_serial: str,
+    *,
+    open_now: bool | None = None,
+    years: float = YEARS,
+    limit_s: float = LIMIT_S,
+) -> BuildPlan:
+    """Return the best plan for one engine over some years, or to its lease return or exit when that comes first.
 
+    ``open_now`` None: open when it has come off and waits for its visit.
     Raises RequestError for an engine that is unknown or in work, NoSolutionError when nothing keeps limits and margin.
     """
-    coming = Coming(fleet)
+    if not 0.0 < years <= 40.0:
+        raise RequestError("build plan, years", f"{years:g}", "more than 0, at most 40")
+    settings = dataclasses.replace(fleet.settings, horizon_years=min(years, fleet.settings.horizon_years))
+    coming = Coming(dataclasses.replace(fleet, settings=settings))
     view = coming.today
     engine, row = view.engine(engine_serial), view.engine_rows[engine_serial]
     tail = coming.tail_of(engine_serial)
+    if row.place == "shop" and row.inducted_day is not None:
+        raise RequestError("engine", engine_serial, "an engine whose work is still open", "its visit has begun")
     removal = coming.removal(engine_serial)
     opened = row.place == "shop" if open_now is None else open_now
     slot = removal.slot if removal.cycles < FAR else -1
     planned = problem_for(view, engine, tail, open_now=opened, slot=slot)
-    warnings = list(fleet.assumptions)
-    if row.place == "shop":
-        warnings.append(f"{engine_serial} is planned for {tail}, since it hangs on no tail")
-    step = planned.problem.end_cycles / POINTS
-    points = points_of(planned.problem, step_cycles=step)
-    openings = openings_of(planned.problem, points=points)
+    warnings = [] if row.place == "wing" else [f"{engine_serial} is planned for {tail}, since it hangs on no tail"]
+    planned, found = _solved(planned, limit_s, warnings)
     warnings.append(
-        f"the engine may be opened at its present limits and every {step:,.0f} cycles; a later life is counted down to "
-        "the point before it"
+        f"the engine may be opened at {len(found.points) - 1} points of the plan; a life is counted down to the last "
+        "point that it reaches"
     )
-    best = _solved(planned, openings, limit_s, warnings)
-    return BuildPlan(planned, points, openings, best, _rules(openings, points), tuple(warnings))
+    rules = _rules(found.fine, found.fine_points)
+    return BuildPlan(
+        planned, found.points, found.openings, found.best, rules, found.fine_points, found.fine, tuple(warnings)
+    )
 
 
-def _solved(planned: Planned, openings: Openings, limit_s: float, warnings: list[str]) -> Opened:
+def _solved(planned: Planned, limit_s: float, warnings: list[str]) -> tuple[Planned, Searched]:
     """Return the best plan; where only the return's own margin cannot be had, without it and with a warning."""
     try:
-        return open_at_best(openings, limit_s=limit_s)
+        return planned, search(planned.problem, limit_s=limit_s)
     except NoSolutionError:
-        budget = openings.budget_degC.copy()
-        budget[-1] = planned.problem.budget_degC(planned.problem.end_cycles)
-        if budget[-1] <= openings.budget_degC[-1]:
+        if planned.problem.end_budget_degC is None:
             raise
         warnings.append("the margin that the lease asks for at its return cannot be reached; the plan goes without it")
-        return open_at_best(dataclasses.replace(openings, budget_degC=budget), limit_s=limit_s)
+        freed = planned._replace(problem=dataclasses.replace(planned.problem, end_budget_degC=None))
+        return freed, search(freed.problem, limit_s=limit_s)
 
 
-def _rules(openings: Openings, points: tuple[float, ...]) -> tuple[RuleCost, ...]:
-    goals = tuple(range(1, len(points), max(1, len(points) // 16)))
+def _rules(fine: Openings, points: tuple[float, ...]) -> tuple[RuleCost, ...]:
     step = points[-1] / (len(points) - 1)
     found = []
     for name, rule in RULES:
         try:
             goal, played = (
-                best_goal(openings, rule, goals_steps=goals) if rule != "run_out" else (1, play(openings, rule))
+                (1, play(fine, rule)) if rule == "run_out" else best_goal(fine, rule, goals_steps=goals_of(fine))
             )
         except NoSolutionError:
             found.append(RuleCost(name, None, None, None))

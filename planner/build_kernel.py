@@ -24,9 +24,12 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from planner.build_cuts import covers, gates
 from planner.minimise import Minimum, Rows, minimise
 from planner.openings import Floats, Install, Openings
 from sim.errors import NoSolutionError, RequestError
+
+_ROUND_USD = 1.0  # a known plan's cost is summed in another order than the solver's
 
 
 class Opened(NamedTuple):
@@ -56,20 +59,32 @@ class _Columns(NamedTuple):
     runs: tuple[tuple[int, int, int], ...]  # (module, from point or -1 for the run under way, to point)
 
 
-def open_at_best(problem: Openings, *, limit_s: float = 60.0) -> Opened:
-    """Return the cheapest plan on the points. Raises NoSolutionError when nothing keeps the limits and the margin."""
+def open_at_best(problem: Openings, *, limit_s: float = 60.0, known: Opened | None = None) -> Opened:
+    """Return the cheapest plan on the points.
+
+    ``known`` is a plan that keeps everything: nothing dearer is looked for, and it is the answer when time runs out
+    before anything better is found. Raises NoSolutionError when nothing keeps the limits and the margin.
+    """
     _check(problem)
     columns = _columns(problem)
     rows = Rows()
     _add_openings(rows, problem, columns)
     _add_parts(rows, problem, columns)
     _add_runs(rows, problem, columns)
+    _add_covers(rows, problem, columns)
     whole = np.arange(columns.total) < columns.run
-    found = minimise(_cost(problem, columns), rows, whole=whole, limit_s=limit_s)
+    cost = _cost(problem, columns)
+    if known is not None:
+        counted = np.flatnonzero(cost)
+        rows.add(counted.tolist(), cost[counted].tolist(), high=known.cost_usd + _ROUND_USD)
+    found = minimise(cost, rows, whole=whole, limit_s=limit_s)
+    if known is not None and (found.x is None or found.cost > known.cost_usd):
+        bound = found.bound if found.bound > -np.inf else minimise(cost, rows).cost
+        return known._replace(bound_usd=known.cost_usd if found.infeasible else min(bound, known.cost_usd))
     if found.infeasible:
         raise NoSolutionError("build plan", _why_nothing_fits(problem))
     if found.x is None:
-        raise NoSolutionError("build plan", f"nothing was found in {limit_s:g} s; use a coarser step")
+        raise NoSolutionError("build plan", f"nothing was found in {limit_s:.1f} s; allow more time")
     return _read(problem, columns, found)
 
 
@@ -182,6 +197,19 @@ def _add_runs(rows: Rows, problem: Openings, at: _Columns) -> None:
         ]
         losses = [_lost(problem, module, start, point) for _, module, start in passing]
         rows.add([column for column, _, _ in passing], losses, high=float(problem.budget_degC[point]))
+
+
+def _add_covers(rows: Rows, problem: Openings, at: _Columns) -> None:
+    """Say what the margin demands as covers of restorations, and of the openings and visits that they need."""
+    steps, said = problem.visit_usd.size, set()
+    for cover in covers(problem):
+        window = range(cover.since, cover.point)
+        rows.add([at.restore + module * steps + q for module in cover.modules for q in window], 1.0, low=1.0)
+        for gate in gates(problem, cover) or (-1,):
+            if (gate, cover.since, cover.point) not in said:
+                said.add((gate, cover.since, cover.point))
+                first = at.visit if gate < 0 else at.open + gate * steps
+                rows.add([first + q for q in window], 1.0, low=1.0)
 
 
 def _read(problem: Openings, at: _Columns, found: Minimum) -> Opened:

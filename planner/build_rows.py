@@ -191,7 +191,7 @@ def rules(plan: BuildPlan) -> list[Row]:
     for rule in plan.rules:
         count = None
         if rule.played is not None:
-            count = int(visited(plan.openings, rule.played.restored, rule.played.installs).sum())
+            count = int(visited(plan.fine, rule.played.restored, rule.played.installs).sum())
         rows.append(
             {
                 "rule": rule.rule,

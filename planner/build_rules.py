@@ -39,7 +39,7 @@ def play(problem: Openings, rule: Rule, *, goal_steps: int = 1) -> Played:
     until = problem.keep_until.copy()
     installs: list[Install] = []
     goal = 1 if rule == "run_out" else max(1, goal_steps)
-    point = 0 if problem.must_visit else _next_opening(problem, 0, until, restored)
+    point = 0 if problem.must_visit else next_opening(problem, 0, until, restored)
     while point < steps:
         reach = min(point + goal, steps)
         if point == 0:
@@ -55,7 +55,7 @@ def play(problem: Openings, rule: Rule, *, goal_steps: int = 1) -> Played:
             best = _longest_new(problem, part, point)
             installs.append(best)
             until[part] = best.until
-        after = _next_opening(problem, point, until, restored)
+        after = next_opening(problem, point, until, restored)
         if after <= point:
             raise NoSolutionError(f"rule {rule}", f"nothing that can be done at point {point} reaches the next one")
         point = after
@@ -69,7 +69,7 @@ def best_goal(problem: Openings, rule: Rule, *, goals_steps: tuple[int, ...]) ->
     return min(played, key=lambda one: (one[1].cost_usd, one[0]))
 
 
-def _next_opening(problem: Openings, point: int, until: NDArray[np.int64], restored: NDArray[np.bool_]) -> int:
+def next_opening(problem: Openings, point: int, until: NDArray[np.int64], restored: NDArray[np.bool_]) -> int:
     """Return the last point that every part and the margin reach from here, the end at the latest."""
     steps = problem.visit_usd.size
     last = int(min(until.min(initial=steps), steps))
