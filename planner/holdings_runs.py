@@ -270,7 +270,8 @@ def _sure(selected: Selected, rule: Rule) -> str:
     if selected.reason == "decided":
         return (
             f"with a chance of at least {rule.level_frac:.0%} it is the cheapest of the {len(selected.totals)} "
-            f"simulated if it is cheaper than every other by {million:.2f} M USD (Kim and Nelson 2001), {selected.runs} runs"
+            f"simulated if it is cheaper than every other by {million:.2f} M USD (Kim and Nelson 2001), "
+            f"{selected.runs} runs"
         )
     left = len(selected.left)
     why = "stopped by hand" if selected.reason == "cancelled" else "the runs allowed are used up"
