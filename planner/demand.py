@@ -166,7 +166,7 @@ def usable_modules(view: Picture, kind: TypeSpec) -> dict[str, int]:
     """Return by module how many owned ones outside engines may mate with at least half of the type's flying
     engines."""
     flying = [
-        (engine, process.flying)
+        (process, engine)
         for process in view.tails.values()
         if process.spec is kind
         for engine in process.engines
@@ -176,7 +176,7 @@ def usable_modules(view: Picture, kind: TypeSpec) -> dict[str, int]:
     for row in view.fleet.modules:
         if row.engine_type == kind.engine_type and not row.engine_serial:
             state = view.modules[row.module_serial]
-            fits = sum(view.world.matching.may_mate(engine, state, how) for engine, how in flying)
+            fits = sum(view.world.matching.may_mate(process, engine, state) for process, engine in flying)
             found[row.module] += fits * 2 >= len(flying)
     return found
 
