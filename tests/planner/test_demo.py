@@ -12,7 +12,7 @@ from click.testing import CliRunner
 
 from planner.assemble import load
 from planner.checks.rules import check
-from planner.commands.demo import command
+from planner.cli import frame
 from planner.demo.dirty import soil
 from planner.demo.make import Demo, before_dirt, fleet, make
 from planner.demo.sub_fleets import counts
@@ -57,7 +57,7 @@ def files(folder: Path) -> dict[str, bytes]:
 
 
 def test_the_committed_fleet_is_what_the_command_writes(tmp_path: Path) -> None:
-    result = CliRunner().invoke(command, [str(tmp_path / "fleet")])
+    result = CliRunner().invoke(frame, ["demo", str(tmp_path / "fleet")])
     assert result.exit_code == 0, result.output
     assert files(tmp_path / "fleet") == files(ROOT / "demo_fleet")
 
@@ -348,7 +348,7 @@ def test_a_size_out_of_range_is_refused_and_nothing_is_left(tmp_path: Path) -> N
     with pytest.raises(RequestError, match="1 to 5000"):
         make(tmp_path / "x", aircraft=0)
     assert list(tmp_path.iterdir()) == []
-    assert CliRunner().invoke(command, [str(tmp_path / "x"), "--aircraft", "0"]).exit_code == 2
+    assert CliRunner().invoke(frame, ["demo", str(tmp_path / "x"), "--aircraft", "0"]).exit_code == 2
 
 
 def test_the_dirty_twin_tells_each_fault_where_it_stands() -> None:
